@@ -1,0 +1,1 @@
+"""What is asked: case files, commands and examples."""

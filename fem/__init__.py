@@ -1,0 +1,1 @@
+"""What the body does: materials, mounts, the eigen-solve, names and theory."""

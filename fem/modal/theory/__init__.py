@@ -1,0 +1,1 @@
+"""Beam, ring and plate formulas to set beside the three-dimensional result."""

@@ -1,0 +1,1 @@
+"""What the body is: shape families, imported bodies, named faces, meshes."""

@@ -1,0 +1,1 @@
+"""What leaves the program: tables, pictures, animations and exchange files."""
