@@ -60,7 +60,7 @@ class Mesh:
             raise InputError("no such face", value=face, allowed=", ".join(self.faces)) from None
 
     def __repr__(self) -> str:
-        """Counts and names, not arrays."""
+        """Return counts and names, not arrays."""
         return (
             f"Mesh({len(self.points)} nodes, {len(self.cells)} cells, "
             f"faces: {', '.join(self.faces)})"
