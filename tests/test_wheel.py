@@ -28,8 +28,8 @@ def wheel(tmp_path_factory):
             (copy / name).parent.mkdir(parents=True, exist_ok=True)
             (copy / name).write_bytes((ROOT / name).read_bytes())
     subprocess.run(
-        [sys.executable, "-m", "pip", "wheel", "-q", "--no-deps", "--no-build-isolation"]
-        + ["--disable-pip-version-check", "-w", str(folder), str(copy)],
+        [sys.executable, "-m", "pip", "wheel", "-q", "--no-deps", "--no-build-isolation", "-w"]
+        + [str(folder), str(copy)],  # noqa: RUF005
         check=True,
         capture_output=True,
     )
