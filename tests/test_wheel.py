@@ -27,9 +27,9 @@ def wheel(tmp_path_factory):
         if (ROOT / name).is_file():
             (copy / name).parent.mkdir(parents=True, exist_ok=True)
             (copy / name).write_bytes((ROOT / name).read_bytes())
+    options = "-q --no-deps --no-build-isolation --disable-pip-version-check".split()
     subprocess.run(
-        [sys.executable, "-m", "pip", "wheel", "-q", "--no-deps", "--no-build-isolation", "-w"]
-        + [str(folder), str(copy)],  # noqa: RUF005
+        [sys.executable, "-m", "pip", "wheel", *options, "-w", str(folder), str(copy)],
         check=True,
         capture_output=True,
     )
