@@ -91,10 +91,12 @@ def _case(document: Mapping[str, Any], file: Path | None, folder: Path) -> Case:
         for i, table in enumerate(tables.mount, 1)
     )
     masses = tuple(
-        _mass(table, places, f"attached_mass.{i}") for i, table in enumerate(tables.attached_mass, 1)
+        _mass(table, places, f"attached_mass.{i}")
+        for i, table in enumerate(tables.attached_mass, 1)
     )
     targets = tuple(
-        _target(table, f"target.{i}", tables.pitch.a4_hz) for i, table in enumerate(tables.target, 1)
+        _target(table, f"target.{i}", tables.pitch.a4_hz)
+        for i, table in enumerate(tables.target, 1)
     )
     _refuse_repeats([target.mode for target in targets], "target")
     _refuse_repeats([row.mode for row in tables.measured], "measured")

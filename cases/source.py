@@ -48,9 +48,7 @@ def _bytes(path: Path, name: str) -> bytes:
     except FileNotFoundError:
         raise InputError("there is no such file" + _hint(path), file=name) from None
     except IsADirectoryError:
-        raise InputError(
-            "is a folder, not a case file", file=name, allowed="a TOML file"
-        ) from None
+        raise InputError("is a folder, not a case file", file=name, allowed="a TOML file") from None
     except NotADirectoryError:
         raise InputError("there is no such file", file=name) from None
     except (OSError, ValueError) as error:

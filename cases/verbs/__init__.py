@@ -1,0 +1,1 @@
+"""The work behind each command: one module each, answering with an `Answer`."""

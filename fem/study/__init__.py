@@ -1,0 +1,1 @@
+"""Studies made of several solves."""
