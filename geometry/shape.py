@@ -10,6 +10,7 @@ from typing import Any
 from .anatomy import Anatomy
 from .dimension import Dimension, read_dimensions
 from .errors import InputError
+from .mesh import Mesh
 from .solid import Solid
 
 MM = 1e-3
@@ -33,6 +34,8 @@ class Family:
         relative file names are looked for
     anatomy : what the body is, mm; None for families whose body must be meshed
         first (imported ones: see `geometry.imported`)
+    mesh : for bodies that are meshes already: the mesh itself, which the mesher
+        returns as it is; then `solid` is never called
     example : dimensions of a part that runs as it is (`new FAMILY`)
     """
 
@@ -43,6 +46,7 @@ class Family:
     check: Callable[[Dimensions], None]
     solid: Callable[[Dimensions, Path], Solid]
     anatomy: Callable[[Dimensions], Anatomy] | None
+    mesh: Callable[[Dimensions, Path], Mesh] | None = None
     example: Mapping[str, Any] = field(default_factory=dict)
 
 

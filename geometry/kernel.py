@@ -1,0 +1,261 @@
+"""From a solid's records to a mesh, in this process (the home of the CAD library).
+
+`geometry.mesher` runs this in a child process; nothing else should.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from contextlib import contextmanager
+from dataclasses import dataclass, replace
+
+import gmsh
+import numpy as np
+
+from .cad import arrays, bodies, imprint, meshing, naming
+from .errors import InputError, MeshError
+from .mesh import Mesh
+from .quality import evenness, facet_areas, straighten, volumes
+from .sizing import Extent, default_size, unknowns
+from .solid import Patch, Solid
+from .words import nearest
+
+#: How well the body must agree with the areas and the volume its records promise.
+_EXACT = 1e-6
+
+#: How well the curved mesh must agree with the body.
+_CURVED = 1e-3
+
+#: Cells whose smallest det J is under this share of their largest are mended.
+_EVEN = 0.05
+
+#: More unknowns than any machine this is meant for would solve.
+_TOO_MANY = 6e6
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Request:
+    """What to mesh: a solid, an element size in mm (or None), patches to imprint."""
+
+    solid: Solid
+    size: float | None = None
+    patches: tuple[Patch, ...] = ()
+
+
+@dataclass(frozen=True, eq=False, kw_only=True, slots=True)
+class Part:
+    """The finished body in the kernel, its faces named; mm.
+
+    Attributes
+    ----------
+    volume : tag
+    names : CAD face tag -> names
+    areas : CAD face tag -> mm2
+    extent : Extent
+    """
+
+    volume: int
+    names: dict[int, list[str]]
+    areas: dict[int, float]
+    extent: Extent
+
+    def area(self, name: str) -> float:
+        """Return the area of a named face, mm2."""
+        return sum(self.areas[tag] for tag, names in self.names.items() if name in names)
+
+
+def mesh(request: Request) -> Mesh:
+    """Build, name, check and mesh a solid.
+
+    Raises
+    ------
+    InputError
+        If the body or a patch is impossible.
+    MeshError
+        If no valid mesh is found.
+    """
+    with _session():
+        part = _build(request.solid, request.patches)
+        _check(part, request.solid)
+        size = request.size or default_size(request.solid.thin, part.extent)
+        about = unknowns(part.extent, size)
+        if about > _TOO_MANY:
+            raise InputError(
+                f"this size would give about {about / 1e6:.0f} million unknowns",
+                key="solve.size",
+                value=size,
+                allowed=f"about {default_size(request.solid.thin, part.extent):g} mm is usual here",
+            )
+        found = _meshed(part, size)
+        return _named(found, part, request, size)
+
+
+@contextmanager
+def _session() -> Iterator[None]:
+    gmsh.initialize([], readConfigFiles=False, interruptible=False)
+    try:
+        gmsh.option.setNumber("General.Terminal", 0)
+        # Faces of joined parts stay apart, so that each keeps its own name.
+        gmsh.option.setNumber("Geometry.OCCUnionUnify", 0)
+        yield
+    finally:
+        gmsh.finalize()
+
+
+def _build(solid: Solid, patches: tuple[Patch, ...]) -> Part:
+    try:
+        gmsh.model.add("part")
+        volume = bodies.build(gmsh, solid.body)
+        gmsh.model.add("sources")
+        sources = naming.make_sources(gmsh, solid.body)
+        part = _name(volume, sources)
+        if patches:
+            part = _imprint(part, sources, patches)
+    except (InputError, MeshError):
+        raise
+    except Exception as error:
+        # The kernel raises bare exceptions, for shapes it cannot make.
+        raise InputError(f"the shape cannot be built ({str(error).strip()})") from None
+    return part
+
+
+def _name(volume: int, sources: list[naming.Source]) -> Part:
+    gmsh.model.setCurrent("part")
+    corners = naming.box(gmsh, 3, volume)
+    diagonal = float(np.linalg.norm(corners[1] - corners[0]))
+    tags = sorted(tag for _, tag in gmsh.model.getBoundary([(3, volume)], oriented=False))
+    points = {tag: naming.samples(gmsh, tag) for tag in tags}
+    centroids = {tag: np.asarray(gmsh.model.occ.getCenterOfMass(2, tag)) for tag in tags}
+    areas = {tag: float(gmsh.model.occ.getMass(2, tag)) for tag in tags}
+    content = float(gmsh.model.occ.getMass(3, volume))
+    gmsh.model.setCurrent("sources")
+    names = {tag: naming.match(gmsh, sources, points[tag], diagonal) for tag in tags}
+    gmsh.model.setCurrent("part")
+    naming.number(names, centroids, diagonal)
+    extent = Extent(
+        volume=content, area=sum(areas.values()), length=float((corners[1] - corners[0]).max())
+    )
+    return Part(volume=volume, names=names, areas=areas, extent=extent)
+
+
+def _imprint(part: Part, sources: list[naming.Source], patches: tuple[Patch, ...]) -> Part:
+    known = sorted({name for names in part.names.values() for name in names})
+    rings = []
+    for patch in patches:
+        faces = [tag for tag, names in part.names.items() if patch.face in names]
+        if not faces:
+            hint = nearest(patch.face, known)
+            raise InputError(
+                "no such face" + (f" (did you mean {hint!r}?)" if hint else ""),
+                value=patch.face,
+                allowed=", ".join(known),
+            )
+        if patch.name in known:
+            raise InputError("a face has that name already", value=patch.name)
+        rings.append(imprint.corners(gmsh, patch, faces, _diagonal(part)))
+    volume = imprint.imprint(gmsh, part.volume, rings)
+    gmsh.model.setCurrent("sources")
+    rectangles = [imprint.add_rectangle(gmsh, ring) for ring in rings]
+    gmsh.model.occ.synchronize()
+    added = [
+        naming.Source(name=patch.name, tag=tag, box=naming.box(gmsh, 2, tag))
+        for patch, tag in zip(patches, rectangles, strict=True)
+    ]
+    split = _name(volume, [*sources, *added])
+    for patch, ring in zip(patches, rings, strict=True):
+        whole = float(np.linalg.norm(np.cross(ring[1] - ring[0], ring[3] - ring[0])))
+        if abs(split.area(patch.name) - whole) > _EXACT * whole:
+            raise InputError(
+                f"the patch does not lie wholly within the face {patch.face!r}",
+                value=f"from {patch.low} to {patch.high}",
+            )
+    return split
+
+
+def _diagonal(part: Part) -> float:
+    corners = naming.box(gmsh, 3, part.volume)
+    return float(np.linalg.norm(corners[1] - corners[0]))
+
+
+def _check(part: Part, solid: Solid) -> None:
+    """Hold the finished body against what its records promise."""
+    known = {name for names in part.names.values() for name in names}
+    if missing := [name for name in solid.faces if name not in known]:
+        raise MeshError(
+            f"the body was built without its face {missing[0]!r} (found: {', '.join(sorted(known))})"
+        )
+    for name, promised in solid.areas.items():
+        _agree(f"area of face {name!r}", part.area(name), promised, _EXACT, "mm2")
+    if solid.volume is not None:
+        _agree("volume", part.extent.volume, solid.volume, _EXACT, "mm3")
+
+
+def _agree(what: str, got: float, wanted: float, tolerance: float, unit: str) -> None:
+    if not abs(got - wanted) <= tolerance * wanted:
+        raise MeshError(f"the {what} came out as {got:.9g} {unit} instead of {wanted:.9g}")
+
+
+def _meshed(part: Part, size: float) -> arrays.Arrays:
+    """Mesh; mend inverted and badly curved cells, at first by the kernel, then by finer cells."""
+    tags = sorted(part.names)
+    found = None
+    for per_turn in (meshing.PER_TURN, 2 * meshing.PER_TURN, 3 * meshing.PER_TURN):
+        meshing.generate(gmsh, size, per_turn=per_turn)
+        found = arrays.read(gmsh, part.volume, tags)
+        if _sound(found):
+            if _faithful(found, part):
+                return found
+            continue
+        meshing.untangle(gmsh)
+        found = arrays.read(gmsh, part.volume, tags)
+        if _sound(found) and _faithful(found, part):
+            return found
+    if found is not None:
+        bad = evenness(found.points, found.cells) <= _EVEN
+        found = replace(found, points=straighten(found.points, found.cells, bad))
+        if _sound(found) and _faithful(found, part):
+            return found
+    raise MeshError(f"no valid mesh was found at {size:g} mm; try a smaller element size")
+
+
+def _sound(found: arrays.Arrays) -> bool:
+    return bool(evenness(found.points, found.cells).min() > _EVEN)
+
+
+def _faithful(found: arrays.Arrays, part: Part) -> bool:
+    """Tell whether the curved mesh has the body's volume and face areas."""
+    content = volumes(found.points, found.cells).sum()
+    if abs(content - part.extent.volume) > _CURVED * part.extent.volume:
+        return False
+    area = facet_areas(found.points, found.facets)
+    got = np.array([area[found.face == tag].sum() for tag in part.areas])
+    return bool(np.all(np.abs(got - list(part.areas.values())) <= _CURVED * got))
+
+
+def _named(found: arrays.Arrays, part: Part, request: Request, size: float) -> Mesh:
+    order = dict.fromkeys(
+        [
+            *request.solid.faces,
+            *(p.name for p in request.patches),
+            *sorted({n for names in part.names.values() for n in names}, key=_natural),
+        ]
+    )
+    faces = {
+        name: np.flatnonzero(
+            np.isin(found.face, [t for t, names in part.names.items() if name in names])
+        )
+        for name in order
+    }
+    return Mesh(
+        points=found.points / 1e3,
+        cells=found.cells,
+        facets=found.facets,
+        faces=faces,
+        size=size / 1e3,
+        volume=part.extent.volume / 1e9,
+    )
+
+
+def _natural(name: str) -> tuple[str, int]:
+    stem, _, number = name.rpartition("_")
+    return (stem, int(number)) if number.isdigit() else (name, 0)

@@ -1,0 +1,59 @@
+"""The default element size: fine through the thickness, within a budget of unknowns."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+#: Unknowns that usual parts stay within, and the most a default ever asks for.
+USUAL, MOST = 45_000, 180_000
+
+#: Fewest unknowns worth having: small blocky parts are meshed at least this finely.
+FEWEST = 9_000
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Extent:
+    """What sizing needs to know of a body: volume mm3, area mm2, longest side mm."""
+
+    volume: float
+    area: float
+    length: float
+
+
+def unknowns(extent: Extent, size: float) -> float:
+    """Return about how many unknowns a mesh of that element size (mm) has.
+
+    Counted on slotted bars, blocks and tubes: nodes fill the volume at about
+    11 / size^3 and lie on the surface at about 6 / size^2, three unknowns each.
+    """
+    return 3.0 * (11.0 * extent.volume / size**3 + 6.0 * extent.area / size**2)
+
+
+def default_size(thin: float, extent: Extent) -> float:
+    """Return the element size, mm.
+
+    About two elements through the thinnest section where that stays within
+    `USUAL` unknowns; down to two thirds of an element where it does not; coarser
+    still only where `MOST` unknowns would be passed.
+
+    Parameters
+    ----------
+    thin : float
+        Smallest wall, web or thickness, mm; 0 where it is not known.
+    extent : Extent
+    """
+    if thin <= 0:
+        thin = 2.0 * extent.volume / extent.area
+    fine, coarse = 0.6 * thin, 1.5 * thin
+    size = min(max(fine, _size_for(extent, USUAL)), coarse)
+    size = max(size, _size_for(extent, MOST))
+    return float(f"{min(size, _size_for(extent, FEWEST)):.3g}")
+
+
+def _size_for(extent: Extent, wanted: float) -> float:
+    """Return the size that gives about that many unknowns."""
+    low, high = 1e-6 * extent.length, extent.length
+    for _ in range(60):
+        middle = (low * high) ** 0.5
+        low, high = (middle, high) if unknowns(extent, middle) > wanted else (low, middle)
+    return high
