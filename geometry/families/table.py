@@ -3,9 +3,26 @@
 from __future__ import annotations
 
 from ..shape import Family
-from . import bar, fork
+from . import (
+    arched_bar,
+    bar,
+    comb,
+    fork,
+    plate,
+    ring,
+    stepped_bar,
+    tube,
+    tuning_fork,
+)
 
 FAMILIES: dict[str, Family] = {
     "bar": bar.FAMILY,
+    "stepped_bar": stepped_bar.FAMILY,
+    "arched_bar": arched_bar.FAMILY,
     "fork": fork.FAMILY,
+    "tuning_fork": tuning_fork.FAMILY,
+    "plate": plate.FAMILY,
+    "ring": ring.FAMILY,
+    "tube": tube.FAMILY,
+    "comb": comb.FAMILY,
 }
