@@ -1,0 +1,159 @@
+"""Mesh files of other tools, read and written: the home of meshio.
+
+Mesh files carry no unit of length. What modewright writes is in millimetres,
+as the shop and other analysis tools expect; what it reads is in the unit the
+user names.
+"""
+
+from __future__ import annotations
+
+import contextlib
+import io
+import os
+from collections.abc import Iterator, Mapping
+from pathlib import Path
+from typing import Any
+
+import meshio
+import numpy as np
+
+from .errors import InputError, ToolError
+from .mesh import Mesh
+from .shape import MM
+
+#: Suffixes of formats that keep second-order tetrahedra in the right node order.
+WRITTEN = (".msh", ".inp", ".vtu", ".vtk", ".bdf", ".nas", ".fem", ".mdpa", ".vol", ".exo", ".xdmf")
+
+#: Suffixes whose files hold triangles beside the tetrahedra.
+_FACES_AS_CELLS = {".msh", ".vtk", ".vtu", ".xdmf"}
+
+
+def write_mesh(path: Path, mesh: Mesh) -> None:
+    """Write a mesh in millimetres, in the format its file name asks for.
+
+    Named faces become physical groups in .msh files, node sets where the
+    format has them (.inp), and marked triangles (cell data ``face``, counted
+    from 1 in the order of `mesh.faces`) in .vtk, .vtu and .xdmf files. The
+    file is read back before it takes its place, so a format that cannot hold
+    second-order tetrahedra is refused, not written wrongly.
+
+    Parameters
+    ----------
+    path : Path
+        Its suffix picks the format.
+    mesh : Mesh
+
+    Raises
+    ------
+    InputError
+        If no format of that suffix can hold the mesh.
+    ToolError
+        If the format needs a package that is not installed, or the file read
+        back is not the mesh.
+    """
+    suffix = path.suffix.lower()
+    if suffix not in WRITTEN:
+        raise InputError(
+            "no format of this suffix holds second-order tetrahedra",
+            value=path.name,
+            allowed=", ".join(WRITTEN),
+        )
+    with _beside(path) as temporary:
+        try:
+            with _silence():
+                _write_as(temporary, suffix, mesh)
+                kept = meshio.read(temporary)
+        except ModuleNotFoundError as error:
+            raise ToolError(
+                f"{path.name}: this format needs the Python package {error.name!r}, "
+                "which is not installed; .msh, .vtu and .inp need nothing more"
+            ) from None
+        if not _holds(kept, mesh):
+            raise ToolError(f"{path.name}: the file read back is not the mesh; try .msh or .vtu")
+
+
+def write_vtu(path: Path, mesh: Mesh, point_data: Mapping[str, np.ndarray]) -> None:
+    """Write the cells and fields at the nodes as one compressed VTU file.
+
+    Parameters
+    ----------
+    path : Path
+    mesh : Mesh
+        Written in millimetres; the nodes of the quadratic tetrahedra are in
+        VTK order already.
+    point_data : name -> (n,) or (n, 3) float
+        Written as 32-bit floats.
+    """
+    data: dict[str, Any] = {
+        name: np.asarray(values, np.float32) for name, values in point_data.items()
+    }
+    record = meshio.Mesh(mesh.points / MM, [("tetra10", mesh.cells)], point_data=data)
+    with _beside(path) as temporary, _silence():
+        meshio.write(temporary, record, file_format="vtu", compression="zlib")
+
+
+def _write_as(path: Path, suffix: str, mesh: Mesh) -> None:
+    """Write `mesh` to `path` with the faces as the format can hold them."""
+    points, cells = mesh.points / MM, np.asarray(mesh.cells, np.int64)
+    node_sets: dict[str, Any] = {name: mesh.face_nodes(name) for name in mesh.faces}
+    if suffix == ".inp":
+        # meshio would choose the hybrid C3D10MH; the plain element is meant.
+        record = meshio.Mesh(points, [("tetra10", cells)], point_sets=node_sets)
+        meshio.write(path, record)
+        text = path.read_text(encoding="utf-8")
+        path.write_text(text.replace("TYPE=C3D10MH", "TYPE=C3D10", 1), encoding="utf-8")
+        return
+    if suffix not in _FACES_AS_CELLS or not mesh.faces:
+        meshio.write(path, meshio.Mesh(points, [("tetra10", cells)]))
+        return
+    # One copy of a triangle for each face it belongs to: a patch's triangles
+    # are also its face's, and a cell carries only one tag.
+    triangles = np.concatenate([mesh.facet_nodes(name) for name in mesh.faces])
+    numbers = np.repeat(
+        np.arange(1, len(mesh.faces) + 1), [len(mesh.faces[name]) for name in mesh.faces]
+    )
+    blocks = [("triangle6", triangles), ("tetra10", cells)]
+    tags = [numbers, np.zeros(len(cells), int)]
+    if suffix == ".msh":
+        body = len(mesh.faces) + 1
+        tags = [t.astype(np.int32) for t in (numbers, np.full(len(cells), body))]
+        names = {name: np.array([i, 2]) for i, name in enumerate(mesh.faces, 1)}
+        marks: dict[str, Any] = {"gmsh:physical": tags, "gmsh:geometrical": list(tags)}
+        groups: dict[str, Any] = {**names, "body": np.array([body, 3])}
+        record = meshio.Mesh(points, blocks, cell_data=marks, field_data=groups)
+        meshio.write(path, record, file_format="gmsh22", binary=False)
+        return
+    faces: dict[str, Any] = {"face": tags}
+    record = meshio.Mesh(points, blocks, cell_data=faces)
+    meshio.write(path, record)
+
+
+def _holds(kept: meshio.Mesh, mesh: Mesh) -> bool:
+    """Tell whether a file read back holds all nodes and second-order cells."""
+    cells = [block.data for block in kept.cells if block.type == "tetra10"]
+    if not cells or len(kept.points) != len(mesh.points):
+        return False
+    found, wanted = np.concatenate(cells), mesh.points / MM
+    if found.shape != mesh.cells.shape:
+        return False
+    size = np.ptp(wanted, axis=0).max()
+    # Each node of each cell must be where it was: that also proves the node order.
+    return bool(np.abs(kept.points[found] - wanted[mesh.cells]).max() <= 1e-6 * size)
+
+
+@contextlib.contextmanager
+def _beside(path: Path) -> Iterator[Path]:
+    """Give a temporary name in the same folder; rename to `path` at the end."""
+    temporary = path.with_name(f".{path.stem}.{os.getpid()}{path.suffix}")
+    try:
+        yield temporary
+        temporary.replace(path)
+    finally:
+        temporary.unlink(missing_ok=True)
+
+
+@contextlib.contextmanager
+def _silence() -> Iterator[None]:
+    """Keep meshio's own prints off the terminal: errors are raised, not printed."""
+    with contextlib.redirect_stdout(io.StringIO()), contextlib.redirect_stderr(io.StringIO()):
+        yield
