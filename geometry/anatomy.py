@@ -180,7 +180,8 @@ class Anatomy:
     length : float
         Extent along the first axis (bars, plates), m; 0 where it has no meaning.
     ends : (str, str) or None
-        Named faces that close a bar at its first and last station.
+        Named faces that close a bar at its first and last station; of a plate,
+        those at both ends of its length.
     regions : prongs or tines; empty when there are none
     sections : bars of one limb (no prongs, tines, cross holes) only; else None,
         and beam theory stays silent

@@ -130,7 +130,7 @@ def _anatomy(d: Dimensions) -> Anatomy:
         return Anatomy(kind=Kind.DISC, round=whole, disc=size)
     length, width = d["length"], d["width"]
     plate = PlateSize(length=length, width=width, thickness=t) if whole else None
-    return Anatomy(kind=Kind.PLATE, length=length, plate=plate)
+    return Anatomy(kind=Kind.PLATE, length=length, ends=("x_min", "x_max"), plate=plate)
 
 
 FAMILY = Family(

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from typing import Literal
 
 import numpy as np
-from scipy.optimize import brentq
+from scipy.optimize import root_scalar
 
 Ends = Literal["clamped-free", "free-free", "clamped-clamped", "clamped-pinned", "pinned-pinned"]
 
@@ -37,9 +38,10 @@ def _sech(x: float) -> float:
     return 2.0 * decay / (1.0 + decay * decay)
 
 
-def _root(function, halves: float) -> float:
-    """Return the root within 0.12 pi + of so many pi."""
-    return float(brentq(function, (halves - 0.2) * np.pi, (halves + 0.2) * np.pi, xtol=1e-13))
+def _root(function: Callable[[float], float], halves: float) -> float:
+    """Return the root near so many times pi."""
+    bracket = ((halves - 0.2) * np.pi, (halves + 0.2) * np.pi)
+    return root_scalar(function, bracket=bracket, xtol=1e-13).root
 
 
 def beam_frequencies(

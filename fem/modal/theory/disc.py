@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
-from scipy.optimize import brentq
+from scipy.optimize import root_scalar
 from scipy.special import ive, jv
 
 
@@ -32,8 +32,10 @@ def disc_root(diameters: int, circles: int, nu: float) -> float:
     values = _characteristic(grid, diameters, nu)
     changes = np.flatnonzero(values[:-1] * values[1:] < 0.0)
     at = grid[changes[wanted]]
-    root = brentq(lambda x: float(_characteristic(x, diameters, nu)), at, at + 0.05, xtol=1e-12)
-    return float(root) ** 2
+    root = root_scalar(
+        lambda x: float(_characteristic(x, diameters, nu)), bracket=(at, at + 0.05), xtol=1e-12
+    ).root
+    return root**2
 
 
 def _characteristic(x, n: int, nu: float):

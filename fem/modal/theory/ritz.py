@@ -101,11 +101,14 @@ def make_grid(x: np.ndarray, waves: int) -> Grid:
 
 
 def _element_edges(x: np.ndarray, waves: int) -> np.ndarray:
-    """Return edges: steps, a spread of stations, and cuts of what is too long."""
-    distinct = np.unique(x)
+    """Return edges: steps, ends of long spans, a spread of stations, cuts of what is too long."""
+    distinct, gaps = np.unique(x), np.diff(x)
     stride = -(-(len(distinct) - 1) // _MOST_ELEMENTS)
-    steps = x[:-1][np.diff(x) == 0.0]
-    kept = np.unique(np.concatenate([distinct[::stride], distinct[-1:], steps]))
+    long = np.flatnonzero(gaps > (x[-1] - x[0]) / _MOST_ELEMENTS)
+    steps = x[:-1][gaps == 0.0]
+    kept = np.unique(
+        np.concatenate([distinct[::stride], distinct[-1:], steps, x[long], x[long + 1]])
+    )
     longest = (kept[-1] - kept[0]) / max(8, waves)
     pieces = [
         np.linspace(a, b, 1 + int(np.ceil((b - a) / longest - 1e-9)))[:-1]
@@ -142,7 +145,7 @@ def spectrum(
     gram = sum(block.T @ block for block in blocks)
     scale = 1.0 / np.sqrt(np.diag(gram))
     factor = cholesky(gram * scale * scale[:, None])
-    reduced = solve_triangular(factor, (s * scale).T, trans="T").T
+    reduced = solve_triangular(factor.T, (s * scale).T, lower=True).T
     _, omega, right = np.linalg.svd(reduced, full_matrices=False)
     omega, right = omega[::-1][rigid : rigid + count], right[::-1][rigid : rigid + count]
     shapes = scale[:, None] * solve_triangular(factor, right.T)

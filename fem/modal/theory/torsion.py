@@ -9,21 +9,6 @@ from .ritz import make_grid, spectrum
 from .support import Held, clamped_columns
 
 
-def torsion_constant(width: float, thickness: float) -> float:
-    """Return Saint-Venant's J of a rectangle, m4, either side first.
-
-    J = (b t^3 / 3) [1 - (192 t / (pi^5 b)) sum over odd n of tanh(n pi b / 2 t) / n^5]
-
-    References
-    ----------
-    Timoshenko S. P., Goodier J. N., Theory of Elasticity, 3rd ed. 1970, art. 109.
-    """
-    b, t = max(width, thickness), min(width, thickness)
-    n = np.arange(1, 200, 2)
-    series = float(np.sum(np.tanh(n * np.pi * b / (2.0 * t)) / n**5))
-    return b * t**3 / 3.0 * (1.0 - 192.0 * t / (np.pi**5 * b) * series)
-
-
 def torsion_frequencies(
     sections: Sections, shear_modulus: float, density: float, held: Held, count: int
 ) -> np.ndarray:
@@ -36,7 +21,7 @@ def torsion_frequencies(
     References
     ----------
     Timoshenko S. P., Young D. H., Weaver W., Vibration Problems in
-    Engineering, 4th ed. 1974, section 5.5; J as in `torsion_constant`.
+    Engineering, 4th ed. 1974, section 5.5. J after Saint-Venant stands in `Sections`.
     """
     grid = make_grid(sections.x, 2 * count)
     polar = np.asarray(sections.i_across, float) + np.asarray(sections.i_through, float)
