@@ -21,7 +21,7 @@ from ..geometry.errors import ModewrightError
 from ..viz.table import Table
 from .answer import Answer, error_document
 
-#: Columns kept whatever the width.
+#: Blanks between columns.
 _GAP = 2
 
 
@@ -39,7 +39,7 @@ def give(answer: Answer, *, as_json: bool) -> None:
     for table in answer.tables:
         _print_table(console, table, answer.spare)
     for line in answer.lines:
-        console.print(Text(line))
+        console.print(Text(line), soft_wrap=not console.is_terminal)
     sys.stdout.flush()
 
 
@@ -49,14 +49,24 @@ def complain(error: ModewrightError, *, as_json: bool) -> None:
         _print_json(error_document(error))
         return
     console = _stderr()
-    console.print(Text.assemble(("error: ", "bold red"), str(error)), soft_wrap=not _wide(console))
+    console.print(
+        Text.assemble(("error: ", "bold red"), str(error)), soft_wrap=not console.is_terminal
+    )
 
 
 def warn(sentences: Sequence[str]) -> None:
     """Print warnings on stderr, one a line."""
     console = _stderr()
     for sentence in sentences:
-        console.print(Text.assemble(("note: ", "yellow"), sentence), soft_wrap=not _wide(console))
+        console.print(
+            Text.assemble(("note: ", "yellow"), sentence), soft_wrap=not console.is_terminal
+        )
+
+
+def _say(label: str, style: str, sentence: str) -> None:
+    console = _stderr()
+    # Only a terminal has a width to wrap at: in a log, one message is one line.
+    console.print(Text.assemble((label, style), sentence), soft_wrap=not console.is_terminal)
 
 
 class Watch:
@@ -88,10 +98,6 @@ def _stdout() -> Console:
 
 def _stderr() -> Console:
     return Console(file=sys.stderr, highlight=False, markup=False, emoji=False)
-
-
-def _wide(console: Console) -> bool:
-    return console.is_terminal
 
 
 def _print_json(document: Mapping[str, Any]) -> None:

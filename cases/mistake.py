@@ -41,10 +41,20 @@ _KINDS = {
     "string_too_short": "must not be empty",
 }
 
+_PATCH = '{ face = "bottom", from = [x0,y0], to = [x1,y1] }'
 _SELECTORS = (
     'a name, { plane = "x", at = "min" }, { box = [[x0,y0,z0],[x1,y1,z1]] }, '
-    '{ near = [x,y,z] } or { face = "bottom", from = [x0,y0], to = [x1,y1] }'
+    "{ near = [x,y,z] } or " + _PATCH
 )
+
+#: Told where something without area is to be held.
+POINT_OR_LINE = (
+    "points and lines cannot be held (in a solid the frequency would follow the mesh): "
+    "use a narrow patch"
+)
+
+#: Keys that people may try for such places.
+_LOOSE = {"point", "points", "line", "lines", "edge", "edges", "node", "nodes", "corner", "at"}
 
 
 def told(mistake: SchemaMistake, document: Mapping[str, Any]) -> InputError:
@@ -69,15 +79,9 @@ def told(mistake: SchemaMistake, document: Mapping[str, Any]) -> InputError:
                 "has the wrong number of items", key=key, value=value, allowed=f"{allowed} items"
             )
         case "selector":
+            if isinstance(value, Mapping) and _LOOSE.intersection(value):
+                return InputError(POINT_OR_LINE, key=key, value=value, allowed=_PATCH)
             return InputError("is not a face", key=key, value=value, allowed=_SELECTORS)
-        case "point_or_line":
-            return InputError(
-                "points and lines cannot be held (in a solid the frequency would follow the "
-                "mesh): use a narrow patch",
-                key=key,
-                value=value,
-                allowed='{ face = "bottom", from = [x0,y0], to = [x1,y1] }',
-            )
         case "rows":
             return InputError(mistake.text, key=key, allowed=f"[[{key}]]")
         case "list_of_faces":

@@ -6,6 +6,7 @@ from ..geometry.errors import InputError
 from ..geometry.selector import ByName, InBox, Near, OnPlane, Selector
 from ..geometry.solid import Patch
 from ..geometry.words import nearest
+from .mistake import POINT_OR_LINE
 from .schema import BoxSelector, NearSelector, PatchSelector, PlaneSelector
 
 
@@ -61,8 +62,7 @@ class Places:
         high = (max(given.low[0], given.high[0]), max(given.low[1], given.high[1]))
         if low[0] == high[0] or low[1] == high[1]:
             raise InputError(
-                "covers no area: points and lines cannot be held (in a solid the frequency would "
-                "follow the mesh), use a narrow patch",
+                f"covers no area: {POINT_OR_LINE}",
                 key=key,
                 value={"from": list(given.low), "to": list(given.high)},
             )

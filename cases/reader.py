@@ -81,7 +81,8 @@ def _case(document: Mapping[str, Any], file: Path | None, folder: Path) -> Case:
     _check_numbers(tables)
     shape = read_shape(tables.shape, folder)
     material = read_material(tables.material)
-    places = Places(shape.solid().faces)
+    # A body that is a mesh already says what faces it has only when it is read.
+    places = Places(() if shape.family.mesh is not None else shape.solid().faces)
     settings = SolveSettings(
         modes=_modes_wanted(tables), up_to=tables.solve.up_to_hz, size=tables.solve.size
     )

@@ -131,33 +131,33 @@ class PatchSelector(Table):
     high: Point2 = Field(alias="to")
 
 
-_LOOSE = ("point", "points", "line", "lines", "edge", "edges", "node", "nodes", "corner")
+_KINDS: dict[type, str] = {
+    PlaneSelector: "<plane>",
+    BoxSelector: "<box>",
+    NearSelector: "<near>",
+    PatchSelector: "<patch>",
+}
 
 
 def _selector_kind(value: Any) -> str | None:
     if isinstance(value, str):
-        return "a name"
+        return "<name>"
     if isinstance(value, Mapping):
-        for key, kind in (("plane", "plane"), ("box", "box"), ("near", "near")):
+        for key in ("plane", "box", "near"):
             if key in value:
-                return kind
+                return f"<{key}>"
         if value.keys() & {"from", "to", "face"}:
-            return "patch"
-        if value.keys() & set(_LOOSE):
-            raise PydanticCustomError("point_or_line", "points and lines cannot be held")
-    elif isinstance(value, BaseModel):
-        return {PlaneSelector: "plane", BoxSelector: "box", NearSelector: "near"}.get(
-            type(value), "patch"
-        )
-    return None
+            return "<patch>"
+    # On the way out the value is one of the tables.
+    return _KINDS.get(type(value))
 
 
 Face = Annotated[
-    Annotated[Word, Tag("a name")]
-    | Annotated[PlaneSelector, Tag("plane")]
-    | Annotated[BoxSelector, Tag("box")]
-    | Annotated[NearSelector, Tag("near")]
-    | Annotated[PatchSelector, Tag("patch")],
+    Annotated[Word, Tag("<name>")]
+    | Annotated[PlaneSelector, Tag("<plane>")]
+    | Annotated[BoxSelector, Tag("<box>")]
+    | Annotated[NearSelector, Tag("<near>")]
+    | Annotated[PatchSelector, Tag("<patch>")],
     Discriminator(
         _selector_kind,
         custom_error_type="selector",

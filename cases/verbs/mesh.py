@@ -7,9 +7,7 @@ from pathlib import Path
 
 import numpy as np
 
-from ...fem.modal.solve import case_mesh
 from ...geometry.errors import InputError
-from ...geometry.exchange import write_mesh
 from ..answer import Answer
 from ..outlet import check_file
 from ..reader import read_case
@@ -34,6 +32,10 @@ def answer_mesh(
     """
     check_file(out)
     case = with_settings(read_case(path), size=size)
+    # Loaded only now, so that a mistake in the case is told at once.
+    from ...fem.modal.solve import case_mesh
+    from ...geometry.exchange import write_mesh
+
     mesh = case_mesh(case, progress=progress)
     try:
         write_mesh(out, mesh)

@@ -8,7 +8,6 @@ from pathlib import Path
 
 from ...fem.modal.case import Case
 from ...fem.modal.modes import Modes
-from ...fem.modal.solve import solve
 from ...geometry.errors import InputError
 from ...viz.document import modes_document
 from ...viz.table import modes_table
@@ -56,6 +55,9 @@ def answer_modes(
     if out is not None:
         check_folder(out)
     case = with_settings(read_case(path), size=size, modes=modes, up_to_hz=up_to_hz)
+    # Loaded only now, so that a mistake in the case is told at once.
+    from ...fem.modal.solve import solve
+
     result = solve(case, progress=progress)
     lines = _written(result, out, pictures, progress) if out is not None else ()
     return Answer(
