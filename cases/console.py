@@ -35,7 +35,7 @@ def give(answer: Answer, *, as_json: bool) -> None:
     if answer.text:
         sys.stdout.write(answer.text)
     if answer.heading:
-        console.print(Text(answer.heading, style="bold"))
+        console.print(Text(answer.heading, style="bold"), soft_wrap=not console.is_terminal)
     for table in answer.tables:
         _print_table(console, table, answer.spare)
     for line in answer.lines:

@@ -1,0 +1,148 @@
+"""From a case to its modes: mesh, eigen-solve, names, pitches, theory."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from time import perf_counter
+
+from ...geometry.anatomy import Anatomy
+from ...geometry.errors import InputError
+from ...geometry.imported import imported_anatomy
+from ...geometry.mesh import Mesh
+from ...geometry.mesher import generate
+from ...geometry.solid import Patch
+from .case import Case
+from .memory import peak_megabytes
+from .modes import MeshFacts, Modes, SolveFacts
+from .naming.beats import beat_warnings
+from .naming.identify import identify
+from .rows import mode_rows
+from .spectrum import solve_spectrum
+from .system import REFERENCE_TEMPERATURE, build_system
+from .theory.predict import predict
+from .theory.support import held_of
+
+Progress = Callable[[str], None]
+
+
+def solve(case: Case, *, mesh: Mesh | None = None, progress: Progress | None = None) -> Modes:
+    """Return the elastic modes of a case, named, by ascending frequency.
+
+    Parameters
+    ----------
+    case : Case
+    mesh : Mesh, optional
+        A mesh of the case's shape at 20 degrees C; default a new one.
+    progress : callable, optional
+        Called with a few words at the start of each stage.
+
+    Raises
+    ------
+    InputError
+        If mounts, masses, targets or measured modes point at nothing.
+    MeshError, ToolError
+        If the part could not be meshed.
+    SolveError
+        If the eigen-solve failed.
+    """
+    try:
+        return _solve(case, mesh, progress or _silent)
+    except InputError as error:
+        raise error.within(file=None if case.file is None else str(case.file)) from None
+
+
+def case_mesh(case: Case, *, progress: Progress | None = None) -> Mesh:
+    """Return the mesh of a case, with the patches its mounts and masses ask for.
+
+    Raises
+    ------
+    InputError
+        If the shape, the size or a patch is impossible.
+    MeshError, ToolError
+        If the part could not be meshed.
+    """
+    (progress or _silent)("meshing")
+    return generate(case.shape, size_mm=case.settings.size, patches=case_patches(case))
+
+
+def case_patches(case: Case) -> tuple[Patch, ...]:
+    """Return the patches that mounts and masses of a case point at, each once."""
+    selectors = [face for mount in case.mounts for face in mount.faces]
+    selectors += [item.face for item in case.attached_masses if item.face is not None]
+    return tuple(dict.fromkeys(face for face in selectors if isinstance(face, Patch)))
+
+
+def _solve(case: Case, mesh: Mesh | None, progress: Progress) -> Modes:
+    start = perf_counter()
+    seconds = {}
+    if mesh is None:
+        mesh = case_mesh(case, progress=progress)
+    meshed = perf_counter()
+    seconds["mesh"] = meshed - start
+
+    progress(f"assembling {3 * len(mesh.points)} unknowns")
+    system = build_system(case, mesh)
+    seconds["assemble"] = perf_counter() - meshed
+
+    progress(f"solving {system.unknowns} unknowns")
+    settings = case.settings
+    spectrum = solve_spectrum(system, modes=settings.modes, up_to_hz=settings.up_to)
+    seconds["factor"] = spectrum.seconds["factor"]
+    seconds["eigen"] = spectrum.seconds["eigen"]
+
+    progress(f"naming {len(spectrum.frequencies)} modes")
+    naming = perf_counter()
+    rise = case.temperature - REFERENCE_TEMPERATURE
+    # The mesh of the system is as warm as the case, and so must its anatomy be.
+    anatomy = _anatomy(case, mesh).scaled(1.0 + (case.material.expansion or 0.0) * rise)
+    identity = identify(system.mesh, anatomy, spectrum.frequencies, spectrum.shapes, system.mass)
+    held = held_of(case.mounts, anatomy, case.attached_masses)
+    theory = predict(anatomy, case.material.at(rise), held, identity.names)
+    rows = mode_rows(case, spectrum.frequencies, identity, theory, spectrum.residuals)
+    seconds["names"] = perf_counter() - naming
+    seconds["total"] = perf_counter() - start
+    return Modes(
+        case=case,
+        mesh=system.mesh,
+        anatomy=anatomy,
+        modes=rows,
+        shapes=identity.shapes,
+        mesh_facts=MeshFacts(
+            nodes=len(mesh.points),
+            cells=len(mesh.cells),
+            unknowns=system.unknowns,
+            size_mm=mesh.size * 1e3,
+            mass_g=system.body_mass * 1e3,
+            volume_mm3=mesh.volume * 1e9,
+        ),
+        solve_facts=SolveFacts(
+            direct_solver=spectrum.direct_solver,
+            missing_modes=None,
+            rigid_modes=spectrum.rigid_modes,
+            seconds=seconds,
+            peak_mb=peak_megabytes(),
+        ),
+        warnings=(
+            *_material_warnings(case),
+            *beat_warnings([row.frequency_hz for row in rows], identity.names),
+        ),
+    )
+
+
+def _anatomy(case: Case, mesh: Mesh) -> Anatomy:
+    """Return what the shape says it is; only the mesh can tell of an imported body."""
+    anatomy = case.shape.anatomy()
+    return imported_anatomy(mesh) if anatomy is None else anatomy
+
+
+def _material_warnings(case: Case) -> tuple[str, ...]:
+    if case.temperature == REFERENCE_TEMPERATURE or case.material.modulus_slope is not None:
+        return ()
+    return (
+        f"{case.material.name} has no modulus_slope_ppm_per_k: at {case.temperature:g} degrees C "
+        "only its expansion is counted",
+    )
+
+
+def _silent(words: str) -> None:
+    """Say nothing."""
