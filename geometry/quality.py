@@ -14,6 +14,13 @@ STATIONS = np.vstack(
 )
 
 
+def shape_values(at: np.ndarray) -> np.ndarray:
+    """Return the values (q, 10) of the ten shape functions at points (q, 3); see `gradients`."""
+    lam = np.column_stack((1 - at.sum(axis=1), at))
+    middle = [4 * lam[:, a] * lam[:, b] for a, b in EDGES]
+    return np.column_stack((lam * (2 * lam - 1), *middle))
+
+
 def gradients(at: np.ndarray) -> np.ndarray:
     """Return gradients (q, 10, 3) of the ten shape functions at points (q, 3).
 
