@@ -1,0 +1,1 @@
+"""Sparse symmetric direct solvers behind one protocol, each in its own module."""

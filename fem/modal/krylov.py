@@ -1,0 +1,250 @@
+"""An M-orthonormal block Krylov space of a shifted and inverted operator."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+import scipy.linalg as sla
+
+Apply = Callable[[np.ndarray], np.ndarray]
+
+#: Columns in one piece of storage of the basis.
+_PIECE = 64
+
+#: A new direction smaller than this share of the block it came from is rounding.
+_ROUNDING = 1e-12
+
+#: Directions below this share of their block are made orthogonal once more.
+_WEAK = 1e-5
+
+#: Fresh vectors that probe for what the space has missed, and how often they are
+#: multiplied by the operator.
+_PROBES, _PROBE_STEPS = 4, 3
+
+
+@dataclass(frozen=True, eq=False, kw_only=True, slots=True)
+class Ritz:
+    """What the space says of the largest eigenvalues of A, descending.
+
+    Attributes
+    ----------
+    theta : (m,) float
+    mixes : (m, m) float
+        Columns mix the basis to Ritz vectors.
+    residuals : (m,) float
+        ||A x - theta x|| / theta in the norm of M.
+    """
+
+    theta: np.ndarray
+    mixes: np.ndarray
+    residuals: np.ndarray
+
+
+class Space:
+    """The space, grown block by block.
+
+    The basis Q of all vectors multiplied so far satisfies A Q = Q T + V C, where V
+    is the block to be multiplied next and C is not zero for the last block only.
+
+    Parameters
+    ----------
+    solve : (N, k) -> (N, k)
+        (K - sigma M)^-1 b.
+    apply_mass : (N, k) -> (N, k)
+    draw : k -> (N, k)
+        Fresh random vectors in the space of motions.
+    known : (N, r) float or None
+        M-orthonormal eigenvectors of A to stay orthogonal to.
+    block : int
+        Vectors in a block.
+    """
+
+    def __init__(
+        self,
+        solve: Apply,
+        apply_mass: Apply,
+        draw: Callable[[int], np.ndarray],
+        known: np.ndarray | None,
+        block: int,
+    ) -> None:
+        self._solve, self._apply_mass, self._draw = solve, apply_mass, draw
+        self._basis = _Columns(block)
+        self._projected = np.zeros((0, 0))
+        self._coupling = np.zeros((0, 0))
+        self._previous: np.ndarray | None = None
+        self._known = known if known is not None and known.shape[1] else None
+        self.steps = self.solves = 0
+        self._next, self._next_mass, _ = self._orthonormal(draw(block))
+
+    @property
+    def exhausted(self) -> bool:
+        """Whether there is no further direction."""
+        return self._next.shape[1] == 0
+
+    @property
+    def size(self) -> int:
+        """Number of vectors in the basis."""
+        return len(self._projected)
+
+    def step(self) -> None:
+        """Multiply the next block by A and take it into the basis."""
+        block, mass = self._next, self._next_mass
+        old, width = self.size, block.shape[1]
+        image = self._multiply(mass)
+        own = mass.T @ image
+        column = np.zeros((old + width, width))
+        column[old:] = 0.5 * (own + own.T)
+        image -= block @ column[old:]
+        if self._previous is not None:
+            # What the last step left in this block, by symmetry.
+            before = self._coupling[:, -self._previous.shape[1] :].T
+            column[old - len(before) : old, : before.shape[1]] = before
+            image -= self._previous @ column[old - len(before) : old]
+        self._basis.append(block)
+        # The part so far is exact; what rounding leaves is taken out by the whole
+        # basis in the next line.
+        following, following_mass, root = self._orthonormal(image)
+        projected = np.zeros((old + width,) * 2)
+        projected[:old, :old] = self._projected
+        projected[:, old:] = column
+        projected[old:] = column.T
+        self._projected = projected
+        self._coupling = np.hstack([np.zeros((len(root), old)), root])
+        self._previous = block
+        self._next, self._next_mass = following, following_mass
+        self.steps += 1
+
+    def ritz(self) -> Ritz:
+        """Return the Ritz values, mixes and residuals."""
+        theta, mixes = sla.eigh(self._projected)
+        theta, mixes = theta[::-1], mixes[:, ::-1]
+        left = np.linalg.norm(self._coupling @ mixes, axis=0)
+        return Ritz(theta=theta, mixes=mixes, residuals=left / np.maximum(np.abs(theta), 1e-300))
+
+    def vectors(self, ritz: Ritz, count: int) -> np.ndarray:
+        """Return the first `count` Ritz vectors (N, count)."""
+        return self._basis.mix(ritz.mixes[:, :count])
+
+    def widen(self, above: float) -> bool:
+        """Look outside the space for eigenvalues theta over `above`; take in what is found.
+
+        Fresh vectors orthogonal to the space are multiplied by A a few times, inside
+        its complement. Returns whether anything was found.
+        """
+        if self.exhausted:
+            return False
+        kept: list[np.ndarray] = []
+        aside = [self._next]
+        vectors, mass, _ = self._orthonormal(
+            self._multiply(self._apply_mass(self._draw(_PROBES))), aside
+        )
+        projected = np.zeros((0, 0))
+        for _ in range(_PROBE_STEPS):
+            if vectors.shape[1] == 0:
+                break
+            kept.append(vectors)
+            image = self._multiply(mass)
+            rows = np.vstack([self._apply_mass(v).T @ image for v in kept])
+            old = len(projected)
+            grown = np.zeros((len(rows),) * 2)
+            grown[:old, :old] = projected
+            grown[:, old:] = rows
+            grown[old:] = rows.T
+            projected = grown
+            vectors, mass, _ = self._orthonormal(image, aside + kept)
+        if not kept:
+            return False
+        theta, mixes = sla.eigh(projected)
+        found = theta > above
+        if not found.any():
+            return False
+        extra = np.hstack(kept) @ mixes[:, found]
+        self._next = np.hstack([self._next, extra])
+        self._next_mass = np.hstack([self._next_mass, self._apply_mass(extra)])
+        self._coupling = np.vstack(
+            [self._coupling, np.zeros((extra.shape[1], self._coupling.shape[1]))]
+        )
+        return True
+
+    def _multiply(self, mass_vectors: np.ndarray) -> np.ndarray:
+        self.solves += mass_vectors.shape[1]
+        return self._solve(mass_vectors)
+
+    def _orthonormal(
+        self, vectors: np.ndarray, aside: list[np.ndarray] | None = None
+    ) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+        """Return vectors made M-orthonormal and orthogonal to everything else.
+
+        Returns
+        -------
+        V, M V : (N, k) float
+        root : (k, b) float
+            vectors = V root, up to what lies in the space already.
+        """
+        root = np.eye(vectors.shape[1])
+        start = None
+        while True:
+            mass = self._apply_mass(vectors)
+            size = np.einsum("ij,ij->j", vectors, mass)
+            start = np.sqrt(size.max(initial=0.0)) if start is None else start
+            for other in [self._known, self._basis, *(aside or [])]:
+                if other is not None:
+                    vectors = _remove(vectors, mass, other)
+            mass = self._apply_mass(vectors)
+            square, turn = sla.eigh(vectors.T @ mass)
+            norms = np.sqrt(np.maximum(square, 0.0))
+            keep = norms > _ROUNDING * start
+            norms, turn = norms[keep], turn[:, keep]
+            vectors, mass = vectors @ (turn / norms), mass @ (turn / norms)
+            root = (norms[:, None] * turn.T) @ root
+            if not keep.any() or norms.min() > _WEAK * start:
+                return vectors, mass, root
+            start = 1.0
+
+
+def _remove(vectors: np.ndarray, mass: np.ndarray, other) -> np.ndarray:
+    if isinstance(other, _Columns):
+        return other.remove(vectors, mass)
+    return vectors - other @ (other.T @ mass)
+
+
+class _Columns:
+    """Columns appended block by block, in pieces, so that nothing is copied."""
+
+    def __init__(self, block: int) -> None:
+        self._width = max(_PIECE, block)
+        self._pieces: list[np.ndarray] = []
+        self._used = 0
+
+    def append(self, block: np.ndarray) -> None:
+        done = 0
+        while done < block.shape[1]:
+            if not self._pieces or self._used == self._width:
+                self._pieces.append(np.empty((len(block), self._width), order="F"))
+                self._used = 0
+            take = min(self._width - self._used, block.shape[1] - done)
+            self._pieces[-1][:, self._used : self._used + take] = block[:, done : done + take]
+            self._used += take
+            done += take
+
+    def _parts(self) -> list[np.ndarray]:
+        return [
+            piece if k + 1 < len(self._pieces) else piece[:, : self._used]
+            for k, piece in enumerate(self._pieces)
+        ]
+
+    def remove(self, vectors: np.ndarray, mass: np.ndarray) -> np.ndarray:
+        for part in self._parts():
+            vectors = vectors - part @ (part.T @ mass)
+        return vectors
+
+    def mix(self, mixes: np.ndarray) -> np.ndarray:
+        first, total = 0, None
+        for part in self._parts():
+            product = part @ mixes[first : first + part.shape[1]]
+            total = product if total is None else total + product
+            first += part.shape[1]
+        assert total is not None
+        return total
