@@ -26,7 +26,7 @@ def axial_frequencies(sections: Sections, material: Material, held: Held, count:
     lateral = across**2 * np.asarray(sections.i_through, float) + through**2 * np.asarray(
         sections.i_across, float
     )
-    grid = make_grid(sections.x, 2 * count)
+    grid = make_grid(sections.x, count + 5)
     area = grid.at_points(sections.area)
 
     def rows(density: np.ndarray, functions: np.ndarray) -> np.ndarray:

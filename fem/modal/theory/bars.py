@@ -35,11 +35,14 @@ class BarTheory:
     sections : Sections, in m
     material : Material
     held : Held, not ``other``
+    highest : int
+        The highest number of a mode that will be asked for.
     """
 
-    def __init__(self, sections: Sections, material: Material, held: Held) -> None:
+    def __init__(self, sections: Sections, material: Material, held: Held, highest: int) -> None:
         self._sections, self._material = sections, material
         self._held: Held = held
+        self._highest = highest
         self._known: dict[str, np.ndarray] = {}
 
     def predict(self, name: str) -> Prediction | None:
@@ -56,7 +59,7 @@ class BarTheory:
 
     def _bending(self, motion: Motion, n: int) -> Prediction | None:
         depth = self._depth_across if motion == "edgewise" else self._depth_through
-        last = int(self._reach / _SHORTEST)
+        last = self._last(self._reach / _SHORTEST)
         if n > last or self._length < _STUBBY * depth:
             return None
 
@@ -76,7 +79,7 @@ class BarTheory:
 
     def _torsion(self, n: int) -> Prediction | None:
         sections, material = self._sections, self._material
-        last = int(self._reach / 2.0) if sections.form == "rectangle" else 2 * int(self._reach)
+        last = self._last(self._reach / 2.0 if sections.form == "rectangle" else 2.0 * self._reach)
         if material.orthotropic or n > last:
             return None
         shear = material.axial_modulus / (2.0 * (1.0 + float(material.poisson_ratio)))  # type: ignore[arg-type]
@@ -88,7 +91,7 @@ class BarTheory:
         return float(known[n - 1]), f"Saint-Venant torsion (1855){warping}{self._form}"
 
     def _axial(self, n: int) -> Prediction | None:
-        last = int(self._reach / _SHORTEST)
+        last = self._last(self._reach / _SHORTEST)
         if n > last:
             return None
         known = self._once(
@@ -96,6 +99,10 @@ class BarTheory:
             lambda: axial_frequencies(self._sections, self._material, self._held, last),
         )
         return float(known[n - 1]), f"rod with lateral inertia (Rayleigh 1894){self._form}"
+
+    def _last(self, covered: float) -> int:
+        """Return the highest mode number worth solving for."""
+        return min(int(covered), self._highest)
 
     def _once(self, key: str, solve: Callable[[], np.ndarray]) -> np.ndarray:
         if key not in self._known:
@@ -130,6 +137,11 @@ class BarTheory:
             for values in (s.area, s.i_across, s.i_through, s.torsion)
         )
         return "" if uniform else ", varying section"
+
+
+def highest_number(names: Sequence[str]) -> int:
+    """Return the highest number in names of modes of bars, 0 if there is none."""
+    return max((int(found[2]) for name in names if (found := _NAME.fullmatch(name))), default=0)
 
 
 def _depth(inertia: Sequence[float] | np.ndarray, area: Sequence[float] | np.ndarray) -> float:

@@ -9,7 +9,7 @@ import numpy as np
 
 from ....geometry.anatomy import Anatomy, DiscSize, Kind, PlateSize, RingSize
 from ..material import Material
-from .bars import BarTheory, Prediction
+from .bars import BarTheory, Prediction, highest_number
 from .disc import disc_frequency
 from .patterns import pattern_of, patterns
 from .plate import plate_frequencies, plate_modes
@@ -52,18 +52,18 @@ def predict(
     -------
     list of (frequency in Hz, source) or None, one per name
     """
-    formula = _formula(anatomy, material, held)
+    formula = _formula(anatomy, material, held, highest_number(names))
     return [formula(name) for name in names] if formula else [None] * len(names)
 
 
 def _formula(
-    anatomy: Anatomy, material: Material, held: Held
+    anatomy: Anatomy, material: Material, held: Held, highest: int
 ) -> Callable[[str], Prediction | None] | None:
     """Return what predicts a mode of this body by its name."""
     if held == "other" or anatomy.regions:
         return None
     if anatomy.kind in (Kind.BAR, Kind.REVOLVED) and anatomy.sections is not None:
-        return BarTheory(anatomy.sections, material, held).predict
+        return BarTheory(anatomy.sections, material, held, highest).predict
     if isinstance(material.poisson_ratio, tuple) or material.orthotropic:
         return None
     nu = float(material.poisson_ratio)

@@ -83,7 +83,7 @@ def bending_frequencies(
     Timoshenko S. P., Phil. Mag. 41 (1921) 744-746; 43 (1922) 125-131.
     """
     inertia = np.asarray(sections.i_across if motion == "flatwise" else sections.i_through, float)
-    grid = make_grid(sections.x, 2 * count)
+    grid = make_grid(sections.x, count + 5)
     area, second = grid.at_points(sections.area), grid.at_points(inertia)
     modulus, shear = material.axial_modulus, shear_rigidity(sections.form, material, motion)
     shear = shear * grid.at_points(_kappa_of(sections, inertia, material))

@@ -23,7 +23,7 @@ def torsion_frequencies(
     Timoshenko S. P., Young D. H., Weaver W., Vibration Problems in
     Engineering, 4th ed. 1974, section 5.5. J after Saint-Venant stands in `Sections`.
     """
-    grid = make_grid(sections.x, 2 * count)
+    grid = make_grid(sections.x, count + 5)
     polar = np.asarray(sections.i_across, float) + np.asarray(sections.i_through, float)
     stiff = shear_modulus * grid.at_points(sections.torsion)
     mass = density * grid.at_points(polar)
