@@ -10,16 +10,24 @@ from scipy.sparse import csr_array
 from ....geometry.anatomy import Anatomy, Kind
 from ....geometry.mesh import Mesh
 from .bars import read_bar
+from .discs import read_disc
 from .label import Identity, Label, Reading
 from .motion import Motion, motion
 from .numbers import labelled
 from .pairs import clusters, rotation
 from .plain import read_plain
+from .plates import read_plate
+from .revolved import read_revolved
+from .rings import read_ring
 from .sign import fixed_signs
 
 #: How a body of each kind is read.
 _READERS: dict[Kind, Callable[[Motion, Anatomy], Reading]] = {
     Kind.BAR: read_bar,
+    Kind.PLATE: read_plate,
+    Kind.DISC: read_disc,
+    Kind.RING: read_ring,
+    Kind.REVOLVED: read_revolved,
     Kind.NONE: read_plain,
 }
 

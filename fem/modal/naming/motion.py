@@ -30,6 +30,8 @@ class Motion:
     Attributes
     ----------
     cells : (c, 10) int
+    nodes : (n, 3) float, m
+        The nodes in the frame.
     nodal : (n, 3, m) float
         Displacements at the nodes, in the frame.
     basis : (q, 10) float
@@ -37,22 +39,29 @@ class Motion:
     points : (c * q, 3) float, m
         Quadrature points in the frame.
     weights : (c * q,) float, m3
-    low, high : (3,) float, m
-        Corners of the body's box in the frame.
     """
 
     cells: np.ndarray
+    nodes: np.ndarray
     nodal: np.ndarray
     basis: np.ndarray
     points: np.ndarray
     weights: np.ndarray
-    low: np.ndarray
-    high: np.ndarray
 
     @property
     def count(self) -> int:
         """Number of modes m."""
         return self.nodal.shape[2]
+
+    @property
+    def low(self) -> np.ndarray:
+        """Lower corner (3,) of the body's box in the frame."""
+        return self.nodes.min(axis=0)
+
+    @property
+    def high(self) -> np.ndarray:
+        """Upper corner (3,) of the body's box in the frame."""
+        return self.nodes.max(axis=0)
 
     @property
     def cell_size(self) -> float:
@@ -121,10 +130,9 @@ def motion(mesh: Mesh, frame: Frame, shapes: np.ndarray, degree: int = 5) -> Mot
     measure = np.abs(np.linalg.det(jacobian)) * weights
     return Motion(
         cells=mesh.cells,
+        nodes=local,
         nodal=np.ascontiguousarray(frame.rotated(shapes).transpose(1, 2, 0)),
         basis=basis,
         points=np.matmul(basis, corners).reshape(-1, 3),
         weights=measure.ravel(),
-        low=local.min(axis=0),
-        high=local.max(axis=0),
     )

@@ -1,4 +1,4 @@
-"""Where the centre line of a bending mode stands still."""
+"""Where a line of a body stands still."""
 
 from __future__ import annotations
 
@@ -25,23 +25,30 @@ def still_points(x: np.ndarray, deflection: np.ndarray, start: float) -> tuple[f
     x, deflection = x[keep], deflection[keep]
     if len(x) < 4 or not np.any(deflection):
         return ()
-    signs = np.signbit(deflection)
-    cuts = np.flatnonzero(signs[1:] != signs[:-1]) + 1
-    lobes = [np.abs(part).max() for part in np.split(deflection, cuts)]
-    floor = _DUST * max(lobes)
     line = CubicSpline(x, deflection)
-    points: list[float] = []
-    last = None  # the last cut since a stretch that counts, and that stretch's sign
-    side = None
-    for place, lobe in enumerate(lobes):
+    points = [_zero(line, x[i - 1], x[i]) for i in crossings(deflection, _DUST)]
+    return tuple(round(1e3 * (point - start), 4) for point in points)
+
+
+def crossings(values: np.ndarray, dust: float) -> list[int]:
+    """Return the places i where values change sign between i - 1 and i.
+
+    Stretches of one sign that stay below `dust` times the largest value do not count.
+    """
+    signs = np.signbit(values)
+    cuts = [0, *(np.flatnonzero(signs[1:] != signs[:-1]) + 1)]
+    lobes = [float(np.abs(part).max()) for part in np.split(values, cuts[1:])]
+    floor = dust * max(lobes)
+    found: list[int] = []
+    side: bool | None = None
+    for cut, lobe in zip(cuts, lobes, strict=True):
         if lobe < floor:
             continue
-        here = bool(signs[cuts[place - 1]]) if place else bool(signs[0])
+        here = bool(signs[cut])
         if side is not None and here != side:
-            last = int(cuts[place - 1])
-            points.append(_zero(line, x[last - 1], x[last]))
+            found.append(int(cut))
         side = here
-    return tuple(round(1e3 * (point - start), 4) for point in points)
+    return found
 
 
 def _zero(line: CubicSpline, low: float, high: float) -> float:

@@ -13,6 +13,9 @@ from .slices import Slices
 #: One limb with more than this part of the limbs' energy has the mode to itself.
 _ALONE = 0.8
 
+#: Tines with less than this part of the liveliest one's energy do not join in.
+_JOINED = 0.1
+
 #: A limb with less than this part of the limbs' energy hardly moves; limbs with
 #: less than this part of the body's energy leave the mode to the root.
 _STILL = 0.02
@@ -89,15 +92,12 @@ def mean_motion(slices: Slices, limb: int) -> np.ndarray:
 
 
 def _run(parts: np.ndarray, numbers: Sequence[int]) -> str:
-    """Name the shortest run of neighbours that holds most of the energy."""
-    for length in range(1, len(parts) + 1):
-        held = np.convolve(parts, np.ones(length), "valid")
-        first = int(held.argmax())
-        if held[first] > _ALONE or length == len(parts):
-            if length == 1:
-                return f"tine {numbers[first]}"
-            return f"tines {numbers[first]}-{numbers[first + length - 1]}"
-    raise AssertionError("a run of all limbs was not accepted")
+    """Name the liveliest, or the run of neighbours from the first to the last that join in."""
+    liveliest = int(parts.argmax())
+    joined = np.flatnonzero(parts >= _JOINED * parts[liveliest])
+    if parts[liveliest] > _ALONE or len(joined) == 1:
+        return f"tine {numbers[liveliest]}"
+    return f"tines {numbers[joined[0]]}-{numbers[joined[-1]]}"
 
 
 def _marks(going: np.ndarray, parts: np.ndarray) -> str:
