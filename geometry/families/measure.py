@@ -52,7 +52,7 @@ def swept_length(segment: Segment) -> tuple[float, float]:
     length = moment = 0.0
     for point, slope, first, last in _pieces(segment):
         s = first + (last - first) * (_NODES + 1) / 2
-        speed = np.hypot(*slope(s)) * (last - first) / 2
+        speed = np.hypot(*slope(s)) * abs(last - first) / 2
         length += float(speed @ _WEIGHTS)
         moment += float((point(s)[0] * speed) @ _WEIGHTS)
     return length, moment

@@ -9,6 +9,7 @@ from . import (
     comb,
     fork,
     plate,
+    revolved,
     ring,
     stepped_bar,
     tube,
@@ -23,6 +24,7 @@ FAMILIES: dict[str, Family] = {
     "tuning_fork": tuning_fork.FAMILY,
     "plate": plate.FAMILY,
     "ring": ring.FAMILY,
+    "revolved": revolved.FAMILY,
     "tube": tube.FAMILY,
     "comb": comb.FAMILY,
 }

@@ -6,8 +6,6 @@ import math
 from itertools import combinations
 from pathlib import Path
 
-import numpy as np
-
 from ..anatomy import Anatomy, Frame, Kind
 from ..dimension import Dimension, Sort
 from ..errors import InputError
@@ -73,15 +71,6 @@ def _check(d: Dimensions) -> None:
             )
 
 
-def _drilled(radius: float, outer: float, inner: float) -> float:
-    """Return the volume of wall that one cross hole removes, all radii in mm."""
-    nodes, weights = np.polynomial.legendre.leggauss(60)
-    angle = math.pi / 4 * (nodes + 1)
-    z = radius * np.sin(angle)
-    chord = np.sqrt(outer**2 - z**2) - np.sqrt(inner**2 - z**2)
-    return float(8 * radius**2 * math.pi / 4 * np.sum(weights * np.cos(angle) ** 2 * chord))
-
-
 def _solid(d: Dimensions, folder: Path) -> Solid:
     length, outer, inner = d["length"], d["outer_diameter"] / 2, _inner(d) / 2
     body: Body = Extrusion(
@@ -96,7 +85,7 @@ def _solid(d: Dimensions, folder: Path) -> Solid:
     )
     end = math.pi * (outer**2 - inner**2)
     areas = {"end_a": end, "end_b": end}
-    volume, thin = end * length, d["wall"]
+    thin = d["wall"]
     holes = d["holes"] or ()
     if holes:
         drills = (
@@ -104,7 +93,6 @@ def _solid(d: Dimensions, folder: Path) -> Solid:
             for i, h in enumerate(holes, 1)
         )
         body = Cut(base=body, tools=tuple(drills))
-        volume -= sum(_drilled(h["diameter"] / 2, outer, inner) for h in holes)
         edges = sorted(
             (h["distance"] - h["diameter"] / 2, h["distance"] + h["diameter"] / 2) for h in holes
         )
@@ -117,7 +105,7 @@ def _solid(d: Dimensions, folder: Path) -> Solid:
         body=body,
         faces=("end_a", "end_b", "inner", "outer", *(f"hole_{i + 1}" for i in range(len(holes)))),
         areas=areas,
-        volume=volume,
+        volume=None if holes else end * length,
         thin=thin,
     )
 

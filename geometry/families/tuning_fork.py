@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import math
-from itertools import pairwise
 from pathlib import Path
 
 import numpy as np
@@ -128,21 +127,6 @@ def _outline(d: Dimensions) -> Loop:
     return tuple(loop)
 
 
-def _stem_volume(d: Dimensions) -> float:
-    """Return the volume of the stem behind the yoke's back, mm3."""
-    radius = _stem_radius(d)
-    middle = min(_corner(d)[1][1], radius)
-    nodes, weights = np.polynomial.legendre.leggauss(40)
-    total = 0.0
-    # z = radius sin(angle) takes the root out of the integrand; a flat back ends at `middle`.
-    breaks = [0.0, math.asin(middle / radius), math.pi / 2]
-    for first, last in pairwise(breaks):
-        angle = first + (last - first) * (nodes + 1) / 2
-        behind = _base_radius(d) + d["stem_length"] - _depth(d, radius * np.sin(angle))
-        total += float(np.sum(weights * behind * np.cos(angle) ** 2)) * (last - first) / 2
-    return 4 * radius**2 * total
-
-
 def _solid(d: Dimensions, folder: Path) -> Solid:
     width, radius, base = d["prong_width"], _stem_radius(d), _base_radius(d)
     outline = _outline(d)
@@ -178,7 +162,6 @@ def _solid(d: Dimensions, folder: Path) -> Solid:
             "left": area,
             "right": area,
         },
-        volume=area * width + _stem_volume(d),
         thin=min(d["prong_thickness"], width, base - d["gap"] / 2, 2 * radius),
     )
 
