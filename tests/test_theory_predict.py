@@ -170,7 +170,7 @@ def test_scaling_laws(factor, material, ratio):
     ring = RingSize(radius=0.05, area=area, i_axial=second, i_radial=second, torsion=2 * second)
     for anatomy, names in (
         (BAR, ("flatwise bending 2", "edgewise bending 1", "torsion 2", "axial 1")),
-        (PLATE, ("plate (1,1)", "plate (2,0)+(0,2)", "plate (2,1) a")),
+        (PLATE, ("plate (1,1)", "plate (2,0)+(0,2)", "plate (2,1)")),
         (
             Anatomy(kind=Kind.DISC, disc=DiscSize(radius=0.1, thickness=0.002)),
             ("disc (2,0) a", "disc (0,1)", "disc (1,1) b"),
@@ -213,8 +213,8 @@ def test_square_plate_patterns():
         "plate (1,1)",
         "plate (2,0)-(0,2)",
         "plate (2,0)+(0,2)",
-        "plate (2,1) a",
-        "plate (1,2) b",
+        "plate (2,1)",
+        "plate (1,2)",
     )
     assert found == pytest.approx([1.6205, 2.3593, 2.9219, 4.187, 4.187], rel=1.5e-3)
     # one order or the other of the two patterns is the same mode

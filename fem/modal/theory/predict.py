@@ -89,7 +89,7 @@ def _plate(
         modes.parameters, size.length, size.thickness, modulus, nu, material.density
     )
     thin = np.sqrt(modes.parameters) / size.length * size.thickness <= _THICK
-    known = patterns(modes)
+    known = patterns(modes, clamped=held != "free")
     edges = "free" if held == "free" else "cantilever"
 
     def formula(name: str) -> Prediction | None:
