@@ -9,6 +9,7 @@ import json
 import sys
 from collections.abc import Iterator, Mapping, Sequence
 from contextlib import contextmanager
+from textwrap import wrap
 from typing import Any
 
 from rich import box
@@ -21,7 +22,7 @@ from ..geometry.errors import ModewrightError
 from ..viz.table import Table
 from .answer import Answer, error_document
 
-#: Blanks between columns.
+#: Blanks between columns; the box style sets one of them.
 _GAP = 2
 
 
@@ -72,24 +73,33 @@ def _say(label: str, style: str, sentence: str) -> None:
 class Watch:
     """Shows what is being done, on a terminal only; called with a few words."""
 
-    def __init__(self, status: Status | None) -> None:
-        self._status = status
+    def __init__(self, console: Console) -> None:
+        self._console = console
+        self._status: Status | None = None
 
     def __call__(self, doing: str) -> None:
         """Say what is being done now."""
+        if not self._console.is_terminal:
+            return
+        if self._status is None:
+            self._status = self._console.status(Text(doing))
+            self._status.start()
+        self._status.update(Text(doing))
+
+    def stop(self) -> None:
+        """Clear the line."""
         if self._status is not None:
-            self._status.update(Text(doing))
+            self._status.stop()
 
 
 @contextmanager
 def watching() -> Iterator[Watch]:
     """Show progress on stderr while the block runs, if stderr is a terminal."""
-    console = _stderr()
-    if not console.is_terminal:
-        yield Watch(None)
-        return
-    with console.status(Text("starting"), spinner="dots") as status:
-        yield Watch(status)
+    watch = Watch(_stderr())
+    try:
+        yield watch
+    finally:
+        watch.stop()
 
 
 def _stdout() -> Console:
@@ -117,51 +127,68 @@ def _print_table(console: Console, table: Table, spare: Sequence[str]) -> None:
         # A file or a pipe has no width: nothing is wrapped or left out.
         sys.stdout.write(f"{table}\n")
         return
-    headers, dropped = _fitting(table, spare, console.width)
-    numeric = dict(zip(table.headers, table.numeric, strict=False))
-    grid = Grid(box=box.SIMPLE_HEAD, padding=(0, _GAP, 0, 0), pad_edge=False, show_edge=False)
-    for header in headers:
-        grid.add_column(
-            Text(header),
-            justify="right" if numeric.get(header) else "left",
-            no_wrap=bool(numeric.get(header)) and header not in ("mode", "text"),
-            overflow="fold",
-        )
-    places = [table.headers.index(header) for header in headers]
-    for row in table.rows:
-        grid.add_row(*(Text(row[place]) for place in places))
-    console.print(grid)
+    kept, dropped = _fitting(table, spare, console.width)
+    blocks = [kept] if spare else _blocks(table, kept, console.width)
+    for columns in blocks:
+        console.print(_grid(table, columns))
     for note in table.notes:
         console.print(Text(note, style="dim"))
     if dropped:
+        names = ", ".join(table.headers[i] for i in dropped)
         console.print(
-            Text(
-                f"No room here for: {', '.join(dropped)}. A wider terminal, --json or --out "
-                "has them.",
-                style="dim",
-            )
+            Text(f"No room here for: {names}. A wider terminal or --json has them.", style="dim")
         )
 
 
-def _fitting(
-    table: Table, spare: Sequence[str], width: int
-) -> tuple[tuple[str, ...], tuple[str, ...]]:
-    """Return the headers that fit the width, and those that had to go."""
-    needs = {
-        header: max([_header_width(header), *(len(row[i]) for row in table.rows)])
+def _grid(table: Table, columns: Sequence[int]) -> Grid:
+    grid = Grid(box=box.SIMPLE_HEAD, padding=(0, _GAP - 1, 0, 0), pad_edge=False, show_edge=False)
+    needs = _needs(table)
+    for i in columns:
+        right = bool(table.numeric) and table.numeric[i]
+        header = "\n".join(wrap(table.headers[i], needs[i])) if right else table.headers[i]
+        grid.add_column(
+            Text(header),
+            justify="right" if right else "left",
+            no_wrap=right,
+            overflow="fold",
+        )
+    for row in table.rows:
+        grid.add_row(*(Text(row[i]) for i in columns))
+    return grid
+
+
+def _needs(table: Table) -> list[int]:
+    """Return the width each column needs; a header may break between words."""
+    return [
+        max([max(map(len, header.split()), default=0), *(len(row[i]) for row in table.rows)])
         for i, header in enumerate(table.headers)
-    }
-    kept = list(table.headers)
-    dropped = []
+    ]
+
+
+def _fitting(table: Table, spare: Sequence[str], width: int) -> tuple[list[int], list[int]]:
+    """Return the columns that fit the width, and those that had to go."""
+    needs = _needs(table)
+    kept, dropped = list(range(len(table.headers))), []
     for header in spare:
-        if sum(needs[h] + _GAP for h in kept) - _GAP <= width:
+        if sum(needs[i] + _GAP for i in kept) - _GAP <= width:
             break
-        if header in kept:
-            kept.remove(header)
-            dropped.append(header)
-    return tuple(kept), tuple(h for h in table.headers if h in dropped)
+        for i in [i for i in kept if table.headers[i] == header]:
+            kept.remove(i)
+            dropped.append(i)
+    return kept, sorted(dropped)
 
 
-def _header_width(header: str) -> int:
-    """Return the width a header needs: it may break between words."""
-    return max(map(len, header.split()), default=0)
+def _blocks(table: Table, columns: Sequence[int], width: int) -> list[list[int]]:
+    """Return the columns in blocks that fit the width; each starts with those that name a row."""
+    needs = _needs(table)
+    right = [bool(table.numeric) and table.numeric[i] for i in columns]
+    # The names of a row end with the last column of text.
+    lead = max((k + 1 for k, flag in enumerate(right) if not flag), default=0)
+    head, rest = list(columns[:lead]), list(columns[lead:])
+    blocks: list[list[int]] = [list(head)]
+    for i in rest:
+        fits = sum(needs[k] + _GAP for k in (*blocks[-1], i)) - _GAP <= width
+        if not fits and len(blocks[-1]) > len(head):
+            blocks.append(list(head))
+        blocks[-1].append(i)
+    return blocks

@@ -21,15 +21,15 @@ SPARE = (
     "other %",
     "root %",
     "mass g",
-    "mesh cents",
     "theory Hz",
-    "target Hz",
-    "measured Hz",
     "edge %",
     "twist %",
     "flat %",
+    "target Hz",
+    "measured Hz",
+    "mesh cents",
     "cents to theory",
-    "nearest",
+    "nearest, cents",
 )
 
 
@@ -59,13 +59,13 @@ def answer_modes(
     from ...fem.modal.solve import solve
 
     result = solve(case, progress=progress)
-    lines = _written(result, out, pictures, progress) if out is not None else ()
+    lines, skipped = _written(result, out, pictures, progress) if out is not None else ((), ())
     return Answer(
         document=modes_document(result),
         heading=heading(result),
         tables=(modes_table(result),),
         lines=lines,
-        warnings=result.warnings,
+        warnings=(*result.warnings, *skipped),
         spare=SPARE,
     )
 
@@ -121,12 +121,13 @@ def heading(result: Modes) -> str:
 
 def _written(
     result: Modes, out: Path, pictures: bool, progress: Callable[[str], None] | None
-) -> tuple[str, ...]:
+) -> tuple[tuple[str, ...], tuple[str, ...]]:
+    """Write all files; return a line that names them, and sentences on what was left out."""
     from ...viz.results import write_results
 
     written = write_results(result, out, pictures=pictures, progress=progress)
     names = ", ".join(_runs([file.name for file in written.files]))
-    return (f"Written to {out}: {names}", *written.skipped)
+    return (f"Written to {out}: {names}",), written.skipped
 
 
 def _runs(names: list[str]) -> list[str]:
