@@ -13,10 +13,13 @@ import gmsh
 import numpy as np
 
 from .cad import arrays, bodies, imprint, meshing, naming
+from .curving import relaxed
 from .errors import InputError, MeshError
+from .ligaments import Spot, thin_places
+from .ligaments import spots as spots_over
 from .mesh import Mesh
 from .quality import evenness, facet_areas, straighten, volumes
-from .sizing import Extent, default_size, unknowns
+from .sizing import MOST, Extent, default_size, unknowns
 from .solid import Patch, Solid
 from .words import nearest
 
@@ -28,6 +31,12 @@ _CURVED = 1e-3
 
 #: Cells whose smallest det J is under this share of their largest are mended.
 _EVEN = 0.05
+
+#: Above this, inner mid-side nodes stay where the CAD library put them.
+_GOOD = 0.5
+
+#: Times a body is meshed before its worst cells are straightened.
+_ATTEMPTS = 4
 
 #: More unknowns than any machine this is meant for would solve.
 _TOO_MANY = 6e6
@@ -86,7 +95,7 @@ def mesh(request: Request) -> Mesh:
                 value=size,
                 allowed=f"about {default_size(request.solid.thin, part.extent):g} mm is usual here",
             )
-        found = _meshed(part, size)
+        found = _meshed(part, size, np.inf if request.size else 1.5 * MOST)
         return _named(found, part, request, size)
 
 
@@ -182,7 +191,8 @@ def _check(part: Part, solid: Solid) -> None:
     known = {name for names in part.names.values() for name in names}
     if missing := [name for name in solid.faces if name not in known]:
         raise MeshError(
-            f"the body was built without its face {missing[0]!r} (found: {', '.join(sorted(known))})"
+            f"the body was built without its face {missing[0]!r} "
+            f"(found: {', '.join(sorted(known))})"
         )
     for name, promised in solid.areas.items():
         _agree(f"area of face {name!r}", part.area(name), promised, _EXACT, "mm2")
@@ -195,31 +205,53 @@ def _agree(what: str, got: float, wanted: float, tolerance: float, unit: str) ->
         raise MeshError(f"the {what} came out as {got:.9g} {unit} instead of {wanted:.9g}")
 
 
-def _meshed(part: Part, size: float) -> arrays.Arrays:
-    """Mesh; mend inverted and badly curved cells, at first by the kernel, then by finer cells."""
-    tags = sorted(part.names)
+def _meshed(part: Part, size: float, most: float) -> arrays.Arrays:
+    """Mesh until the cells are even, thin places fine enough and the surface true.
+
+    `most` is a number of unknowns above which round faces are meshed more coarsely.
+    """
+    spots: list[Spot] = []
+    per_turn = meshing.PER_TURN
     found = None
-    for per_turn in (meshing.PER_TURN, 2 * meshing.PER_TURN, 3 * meshing.PER_TURN):
-        meshing.generate(gmsh, size, per_turn=per_turn)
-        found = arrays.read(gmsh, part.volume, tags)
-        if _sound(found):
-            if _faithful(found, part):
-                return found
-            continue
-        meshing.untangle(gmsh)
-        found = arrays.read(gmsh, part.volume, tags)
-        if _sound(found) and _faithful(found, part):
+    for attempt in range(_ATTEMPTS):
+        meshing.generate(gmsh, size, per_turn=per_turn, spots=spots)
+        found = _curved(arrays.read(gmsh, part.volume, sorted(part.names)))
+        if attempt == 0:
+            if 3 * len(found.points) > most:
+                per_turn = meshing.FEW_PER_TURN
+                continue
+            spots = thin_places(found.points, found.facets, size)
+            if spots:
+                continue
+        bad = evenness(found.points, found.cells) <= _EVEN
+        if not bad.any() and _faithful(found, part):
             return found
+        if bad.any():
+            spots = [*spots, *_around(found, bad, size)]
+        else:
+            per_turn += meshing.PER_TURN // 2
     if found is not None:
         bad = evenness(found.points, found.cells) <= _EVEN
         found = replace(found, points=straighten(found.points, found.cells, bad))
-        if _sound(found) and _faithful(found, part):
+        if evenness(found.points, found.cells).min() > _EVEN and _faithful(found, part):
             return found
     raise MeshError(f"no valid mesh was found at {size:g} mm; try a smaller element size")
 
 
-def _sound(found: arrays.Arrays) -> bool:
-    return bool(evenness(found.points, found.cells).min() > _EVEN)
+def _curved(found: arrays.Arrays) -> arrays.Arrays:
+    """Let the inner mid-side nodes follow the surface where that evens out the cells."""
+    before = evenness(found.points, found.cells).min()
+    if before > _GOOD:
+        return found
+    points = relaxed(found.points, found.cells, found.facets)
+    return replace(found, points=points) if evenness(points, found.cells).min() > before else found
+
+
+def _around(found: arrays.Arrays, bad: np.ndarray, size: float) -> list[Spot]:
+    """Return spots of half-size cells where cells are bad (c,)."""
+    corners = found.points[found.cells[bad][:, :4]]
+    longest = np.linalg.norm(corners - np.roll(corners, 1, axis=1), axis=2).max(axis=1)
+    return spots_over(corners.mean(axis=1), longest / 2, size)
 
 
 def _faithful(found: arrays.Arrays, part: Part) -> bool:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 #: Unknowns that usual parts stay within, and the most a default ever asks for.
-USUAL, MOST = 45_000, 180_000
+USUAL, MOST = 45_000, 150_000
 
 #: Fewest unknowns worth having: small blocky parts are meshed at least this finely.
 FEWEST = 9_000
@@ -23,10 +23,11 @@ class Extent:
 def unknowns(extent: Extent, size: float) -> float:
     """Return about how many unknowns a mesh of that element size (mm) has.
 
-    Counted on slotted bars, blocks and tubes: nodes fill the volume at about
-    11 / size^3 and lie on the surface at about 6 / size^2, three unknowns each.
+    Counted on 31 meshes of bars, blocks and plates, 0.1 to 4 sizes thick, to
+    about 25 %: nodes by volume, by area and along four long edges; three unknowns each.
     """
-    return 3.0 * (11.0 * extent.volume / size**3 + 6.0 * extent.area / size**2)
+    nodes = 2.6 * extent.volume / size**3 + 4.3 * extent.area / size**2
+    return 3.0 * (nodes + 35.0 * extent.length / size)
 
 
 def default_size(thin: float, extent: Extent) -> float:
@@ -44,7 +45,7 @@ def default_size(thin: float, extent: Extent) -> float:
     """
     if thin <= 0:
         thin = 2.0 * extent.volume / extent.area
-    fine, coarse = 0.6 * thin, 1.5 * thin
+    fine, coarse = 0.45 * thin, 1.5 * thin
     size = min(max(fine, _size_for(extent, USUAL)), coarse)
     size = max(size, _size_for(extent, MOST))
     return float(f"{min(size, _size_for(extent, FEWEST)):.3g}")

@@ -2,12 +2,17 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from typing import Any
 
 from ..errors import MeshError
+from ..ligaments import Spot
 
 #: Cells per full turn of a curved face.
 PER_TURN = 12
+
+#: Cells per full turn where the former would make too many.
+FEW_PER_TURN = 8
 
 #: A curve shorter than this share of the element size refines the mesh around it.
 _SHORT = 0.7
@@ -33,7 +38,9 @@ _OPTIONS = {
 }
 
 
-def generate(cad: Any, size: float, *, per_turn: int = PER_TURN) -> None:
+def generate(
+    cad: Any, size: float, *, per_turn: int = PER_TURN, spots: Sequence[Spot] = ()
+) -> None:
     """Mesh the current model's volume with curved second-order tetrahedra.
 
     Parameters
@@ -41,6 +48,7 @@ def generate(cad: Any, size: float, *, per_turn: int = PER_TURN) -> None:
     cad : kernel handle
     size : element size, mm
     per_turn : cells per full turn of curved faces
+    spots : balls with cells of their own size
 
     Raises
     ------
@@ -53,7 +61,7 @@ def generate(cad: Any, size: float, *, per_turn: int = PER_TURN) -> None:
     cad.option.setNumber("Mesh.MeshSizeMin", size * _SMALLEST)
     cad.option.setNumber("Mesh.MeshSizeFromCurvature", per_turn)
     cad.model.mesh.clear()
-    _refine_short_curves(cad, size)
+    _refine(cad, size, spots)
     try:
         cad.model.mesh.generate(3)
         cad.model.mesh.setOrder(2)
@@ -64,16 +72,35 @@ def generate(cad: Any, size: float, *, per_turn: int = PER_TURN) -> None:
         ) from None
 
 
-def untangle(cad: Any) -> None:
-    """Let the kernel move the mid-side nodes of badly curved cells."""
-    cad.model.mesh.optimize("HighOrder")
-
-
-def _refine_short_curves(cad: Any, size: float) -> None:
-    """Grade the size from the length of each short curve back to the global size."""
+def _refine(cad: Any, size: float, spots: Sequence[Spot]) -> None:
+    """Set local sizes: the finest of what short curves and spots ask for."""
     field = cad.model.mesh.field
-    for tag in list(field.list()):
+    for tag in field.list().tolist():
         field.remove(tag)
+    grades = [*_short_curves(cad, size), *(_ball(cad, spot, size) for spot in spots)]
+    if grades:
+        finest = field.add("Min")
+        field.setNumbers(finest, "FieldsList", grades)
+        field.setAsBackgroundMesh(finest)
+
+
+def _ball(cad: Any, spot: Spot, size: float) -> int:
+    x, y, z = spot.centre
+    return _field(
+        cad,
+        "Ball",
+        XCenter=x,
+        YCenter=y,
+        ZCenter=z,
+        Radius=spot.radius,
+        Thickness=3 * max(size - spot.size, 0.0),
+        VIn=spot.size,
+        VOut=size,
+    )
+
+
+def _short_curves(cad: Any, size: float) -> list[int]:
+    """Return fields that grade from the length of each short curve to the global size."""
     short: dict[float, list[int]] = {}
     for _, tag in cad.model.getEntities(1):
         length = cad.model.occ.getMass(1, tag)
@@ -81,19 +108,24 @@ def _refine_short_curves(cad: Any, size: float) -> None:
             short.setdefault(float(f"{max(length, size * _SMALLEST):.2g}"), []).append(tag)
     grades = []
     for length, curves in sorted(short.items()):
-        distance, grade = field.add("Distance"), field.add("Threshold")
-        field.setNumbers(distance, "CurvesList", curves)
-        field.setNumber(distance, "Sampling", 5)
-        for option, value in (
-            ("InField", distance),
-            ("SizeMin", length),
-            ("SizeMax", size),
-            ("DistMin", length),
-            ("DistMax", length + 3 * (size - length)),
-        ):
-            field.setNumber(grade, option, value)
-        grades.append(grade)
-    if grades:
-        finest = field.add("Min")
-        field.setNumbers(finest, "FieldsList", grades)
-        field.setAsBackgroundMesh(finest)
+        distance = _field(cad, "Distance", Sampling=5)
+        cad.model.mesh.field.setNumbers(distance, "CurvesList", curves)
+        grades.append(
+            _field(
+                cad,
+                "Threshold",
+                InField=distance,
+                SizeMin=length,
+                SizeMax=size,
+                DistMin=length,
+                DistMax=length + 3 * (size - length),
+            )
+        )
+    return grades
+
+
+def _field(cad: Any, kind: str, **numbers: float) -> int:
+    tag = cad.model.mesh.field.add(kind)
+    for option, value in numbers.items():
+        cad.model.mesh.field.setNumber(tag, option, value)
+    return tag
