@@ -134,7 +134,7 @@ def sweep(
             "(material.youngs_modulus_gpa)."
         ),
     ],
-    values: Annotated[str, Parameter(help="Two or more values: 1,2,3.")],
+    values: Annotated[str, Parameter(help="Two or more values: 1,2,3.", allow_leading_hyphen=True)],
     out: Annotated[Path | None, Parameter(help="Write the results into this folder.")] = None,
     size: Annotated[float | None, Parameter(help="Size of the mesh's cells, mm.")] = None,
     modes: Annotated[int | None, Parameter(help="How many elastic modes.")] = None,

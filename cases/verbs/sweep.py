@@ -54,18 +54,18 @@ def answer_sweep(
         check_folder(out)
     wanted = read_values(values)
     # Every case is built before the first is solved: a wrong value is told at once.
-    cases = [
-        with_settings(case, size=size, modes=modes, up_to_hz=up_to_hz)
-        for case in sweep_cases(path, vary, wanted)
-    ]
+    base, varied_cases = sweep_cases(path, vary, wanted)
+    settings = {"size": size, "modes": modes, "up_to_hz": up_to_hz}
+    base = with_settings(base, **settings)
+    cases = [with_settings(case, **settings) for case in varied_cases]
     from ...fem.study.sweep import sweep
 
     result = sweep(vary, wanted, cases, progress=progress)
-    document = sweep_document(result, cases[0])
+    document = sweep_document(result, base)
     lines = () if out is None else (_write(result, document, out),)
     return Answer(
         document=document,
-        heading=f"{cases[0].title}: {vary} from {wanted[0]} to {wanted[-1]}, frequencies in Hz",
+        heading=f"{base.title}: {vary} from {wanted[0]} to {wanted[-1]}, frequencies in Hz",
         tables=(sweep_table(result),),
         lines=lines,
     )
@@ -110,8 +110,8 @@ def read_values(text: str) -> tuple[Value, ...]:
     return tuple(found)
 
 
-def sweep_cases(path: Path, key: str, values: tuple[Value, ...]) -> list[Case]:
-    """Return the case of a file with each value in turn in place of its own.
+def sweep_cases(path: Path, key: str, values: tuple[Value, ...]) -> tuple[Case, list[Case]]:
+    """Return the case of a file, and the same with each value in turn in place of its own.
 
     Raises
     ------
@@ -132,15 +132,15 @@ def sweep_cases(path: Path, key: str, values: tuple[Value, ...]) -> list[Case]:
             ) from None
         # Targets name modes of the part as it is, which need not be there at every value.
         cases.append(replace(case, targets=(), measured=(), pitch=_no_reference(case)))
-    return cases
+    return base, cases
 
 
-def sweep_document(result: Sweep, first: Case) -> dict[str, Any]:
-    """Return a sweep as programs read it."""
+def sweep_document(result: Sweep, base: Case) -> dict[str, Any]:
+    """Return a sweep as programs read it; `base` is the case as its file has it."""
     return {
         "format": "modewright-sweep",
         "version": 1,
-        "case": dict(first.document),
+        "case": dict(base.document),
         "vary": result.key,
         "values": list(result.values),
         "modes": [

@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Callable
 from time import perf_counter
 
+from scipy.sparse import csr_array
+
 from ...geometry.anatomy import Anatomy
 from ...geometry.errors import InputError
 from ...geometry.imported import imported_anatomy
@@ -95,7 +97,9 @@ def _solve(case: Case, mesh: Mesh | None, progress: Progress) -> Modes:
     rise = case.temperature - REFERENCE_TEMPERATURE
     # The mesh of the system is as warm as the case, and so must its anatomy be.
     anatomy = _anatomy(case, mesh).scaled(1.0 + (case.material.expansion or 0.0) * rise)
-    identity = identify(system.mesh, anatomy, spectrum.frequencies, spectrum.shapes, system.mass)
+    identity = identify(
+        system.mesh, anatomy, spectrum.frequencies, spectrum.shapes, csr_array(system.mass)
+    )
     held = held_of(case.mounts, anatomy, case.attached_masses)
     theory = predict(anatomy, case.material.at(rise), held, identity.names)
     rows = mode_rows(case, spectrum.frequencies, identity, theory, spectrum.residuals)

@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import numpy as np
 from scipy.optimize import linear_sum_assignment
-from scipy.spatial import cKDTree
+from scipy.spatial import KDTree
 
 from ..modal.modes import Modes
 
@@ -90,7 +90,7 @@ def _read_at(modes: Modes, places: np.ndarray) -> np.ndarray:
     count = min(_CANDIDATES, len(cells))
     # Boxed coordinates stretch thin bodies: nearness is judged as the body is.
     size = np.ptp(modes.mesh.points, axis=0)
-    _, near = cKDTree(corners.mean(axis=1) * size).query(places * size, k=count)
+    _, near = KDTree(corners.mean(axis=1) * size).query(places * size, k=count)
     near = near.reshape(len(places), count)
     edges = np.swapaxes(corners[:, 1:] - corners[:, :1], 1, 2)
     inverse = np.linalg.inv(edges)

@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
+from ...geometry.mesh import Mesh
 from ..modal.case import Case
 from ..modal.modes import Modes
-from ..modal.solve import solve
+from ..modal.solve import case_mesh, case_patches, solve
 from .follow import follow
 
 #: Modes solved for beyond those wanted, so that one that climbs is not lost.
@@ -82,10 +83,13 @@ def sweep(
     """
     tracks: list[_Growing] = []
     before: Modes | None = None
+    mesh: Mesh | None = None
     wanted = 0
     for i, (value, case) in enumerate(zip(values, cases, strict=True), 1):
         say = _prefixed(progress, f"{key} = {value} ({i} of {len(cases)}): ")
-        now = solve(_with_spare(case), progress=say)
+        if mesh is None or not _same_body(case, cases[i - 2]):
+            mesh = case_mesh(case, progress=say)
+        now = solve(_with_spare(case), mesh=mesh, progress=say)
         wanted = max(wanted, _wanted(case, now))
         _extend(tracks, before, now, step=i - 1)
         before = now
@@ -134,9 +138,18 @@ def _extend(tracks: list[_Growing], before: Modes | None, now: Modes, step: int)
             tracks.append(track)
 
 
-def _with_spare(case: Case) -> Case:
-    from dataclasses import replace
+def _same_body(case: Case, other: Case) -> bool:
+    """Return whether a mesh of one case serves the other."""
+    return (
+        case.shape.family is other.shape.family
+        and case.shape.dimensions == other.shape.dimensions
+        and case.shape.folder == other.shape.folder
+        and case.settings.size == other.settings.size
+        and case_patches(case) == case_patches(other)
+    )
 
+
+def _with_spare(case: Case) -> Case:
     settings = case.settings
     if settings.modes is None:
         return case
