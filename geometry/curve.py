@@ -128,7 +128,7 @@ def moved(segment: Segment, matrix: np.ndarray, shift: np.ndarray) -> Segment:
     """Return the curve after p -> matrix @ p + shift.
 
     Circular arcs stay circular under turning, mirroring and even scaling; under
-    any other map they become exact rational splines.
+    any other map they become arcs of an ellipse.
     """
 
     def go(p: Point2 | Sequence[float]) -> Point2:
@@ -152,41 +152,72 @@ def moved(segment: Segment, matrix: np.ndarray, shift: np.ndarray) -> Segment:
                 through=go(segment.through),
                 end=go(segment.end),
             )
-        case _:
-            return moved(as_bspline(segment), matrix, shift)
+        case Arc() | Circle() | EllipseArc():
+            return _moved_ellipse(as_ellipse(segment), matrix, shift)
 
 
-def as_bspline(segment: Arc | EllipseArc | Circle) -> BSpline:
-    """Return a circular or elliptic arc as an exact rational quadratic spline.
+def as_ellipse(segment: Arc | Circle | EllipseArc) -> EllipseArc:
+    """Return a circular arc or circle as an arc of an ellipse."""
+    match segment:
+        case EllipseArc():
+            return segment
+        case Arc():
+            centre, radius, first, sweep = circle_of(segment)
+        case Circle():
+            centre, radius, first, sweep = segment.centre, segment.radius, 0.0, 2 * math.pi
+    sense = math.copysign(1.0, sweep)
+    return EllipseArc(
+        centre=_point(centre),
+        major=(radius, 0.0),
+        ratio=sense,
+        first=sense * first,
+        last=sense * (first + sweep),
+        face=segment.face,
+    )
+
+
+def _moved_ellipse(arc: EllipseArc, matrix: np.ndarray, shift: np.ndarray) -> EllipseArc:
+    """Return the arc mapped: the new half axes are the singular vectors of the mapped old ones."""
+    major = np.asarray(arc.major)
+    minor = arc.ratio * np.array([-major[1], major[0]])
+    u, size, vt = np.linalg.svd(matrix @ np.column_stack((major, minor)))
+    if np.linalg.det(vt) < 0:
+        vt[1], u[:, 1] = -vt[1], -u[:, 1]
+    turn = math.atan2(vt[0, 1], vt[0, 0])
+    return replace(
+        arc,
+        centre=_point(matrix @ np.asarray(arc.centre) + shift),
+        major=_point(u[:, 0] * size[0]),
+        ratio=float(size[1] / size[0] * math.copysign(1.0, np.linalg.det(u))),
+        first=arc.first - turn,
+        last=arc.last - turn,
+    )
+
+
+def as_bspline(arc: EllipseArc) -> BSpline:
+    """Return an elliptic arc as an exact rational quadratic spline.
 
     Piegl and Tiller, *The NURBS Book*, 2nd ed., sec. 7.3: one span for every
     90 degrees, its middle pole where the end tangents meet, weighted by the
     cosine of half the span.
     """
-    match segment:
-        case EllipseArc():
-            major = np.asarray(segment.major, float)
-            minor = segment.ratio * np.array([-major[1], major[0]])
-            centre = np.asarray(segment.centre, float)
-            first, sweep = segment.first, segment.last - segment.first
-        case Arc():
-            centre, radius, first, sweep = circle_of(segment)
-            major, minor = np.array([radius, 0.0]), np.array([0.0, radius])
-        case Circle():
-            centre, first, sweep = np.asarray(segment.centre, float), 0.0, 2 * math.pi
-            major, minor = np.array([segment.radius, 0.0]), np.array([0.0, segment.radius])
+    major = np.asarray(arc.major, float)
+    minor = arc.ratio * np.array([-major[1], major[0]])
+    sweep = arc.last - arc.first
     spans = max(1, math.ceil(abs(sweep) / (math.pi / 2) - 1e-9))
     half = sweep / spans / 2
-    angles = first + half * np.arange(2 * spans + 1)
+    angles = arc.first + half * np.arange(2 * spans + 1)
     grow = np.where(np.arange(2 * spans + 1) % 2, 1 / math.cos(half), 1.0)
-    poles = centre + np.outer(grow * np.cos(angles), major) + np.outer(grow * np.sin(angles), minor)
+    poles = np.asarray(arc.centre) + (
+        np.outer(grow * np.cos(angles), major) + np.outer(grow * np.sin(angles), minor)
+    )
     inner = [float(k) for k in range(1, spans) for _ in range(2)]
     return BSpline(
         poles=tuple(_point(p) for p in poles),
         degree=2,
         knots=(0.0, 0.0, 0.0, *inner, *[float(spans)] * 3),
         weights=tuple(float(w) for w in 1 / grow),
-        face=segment.face,
+        face=arc.face,
     )
 
 
@@ -254,5 +285,5 @@ def _on_circle(centre: np.ndarray, radius: float, angles: np.ndarray) -> np.ndar
     return centre + radius * np.column_stack((np.cos(angles), np.sin(angles)))
 
 
-def _point(p: np.ndarray) -> Point2:
+def _point(p: np.ndarray | Point2) -> Point2:
     return (float(p[0]), float(p[1]))
