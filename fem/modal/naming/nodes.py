@@ -25,8 +25,11 @@ def still_points(x: np.ndarray, deflection: np.ndarray, start: float) -> tuple[f
     x, deflection = x[keep], deflection[keep]
     if len(x) < 4 or not np.any(deflection):
         return ()
-    line = CubicSpline(x, deflection)
-    points = [_zero(line, x[i - 1], x[i]) for i in crossings(deflection, _DUST)]
+    zeros = CubicSpline(x, deflection).roots(extrapolate=False)
+    points = []
+    for i in crossings(deflection, _DUST):
+        between = zeros[(zeros >= x[i - 1]) & (zeros <= x[i])]
+        points.append(float(between[0]) if len(between) else float(x[i]))
     return tuple(round(1e3 * (point - start), 4) for point in points)
 
 
@@ -49,16 +52,3 @@ def crossings(values: np.ndarray, dust: float) -> list[int]:
             found.append(int(cut))
         side = here
     return found
-
-
-def _zero(line: CubicSpline, low: float, high: float) -> float:
-    """Return the zero of a spline between two points of opposite sign, by bisection."""
-    below = float(line(low))
-    for _ in range(60):
-        middle = 0.5 * (low + high)
-        value = float(line(middle))
-        if (value < 0.0) == (below < 0.0):
-            low, below = middle, value
-        else:
-            high = middle
-    return float(0.5 * (low + high))

@@ -40,9 +40,12 @@ def fixed_signs(mesh: Mesh, frame: Frame, shapes: np.ndarray, mass: csr_array) -
     local = frame.local(mesh.points)
     low, high = local.min(axis=0), local.max(axis=0)
     unit = (local - low) / (high - low).max()
-    field = sum(
-        np.prod(unit ** np.asarray(powers), axis=1)[:, None] * np.asarray(vector)
-        for powers, vector in _FIELD
-    )
+    field = np.zeros_like(local)
+    for powers, vector in _FIELD:
+        term = np.ones(len(unit))
+        for axis, power in enumerate(powers):
+            for _ in range(power):
+                term = term * unit[:, axis]
+        field += term[:, None] * np.asarray(vector)
     weighted = mass @ (field @ np.asarray(frame.axes))
     return np.where(np.tensordot(shapes, weighted, 2) < 0.0, -1.0, 1.0)
