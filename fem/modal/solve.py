@@ -89,6 +89,10 @@ def _solve(case: Case, mesh: Mesh | None, progress: Progress) -> Modes:
     progress(f"solving {system.unknowns} unknowns")
     settings = case.settings
     spectrum = solve_spectrum(system, modes=settings.modes, up_to_hz=settings.up_to)
+    if len(spectrum.frequencies) == 0:
+        raise InputError(
+            "no mode lies that low", key="solve.up_to_hz", value=settings.up_to, allowed="more"
+        )
     seconds["factor"] = spectrum.seconds["factor"]
     seconds["eigen"] = spectrum.seconds["eigen"]
 

@@ -104,7 +104,7 @@ def solve_spectrum(
         )
     return Spectrum(
         frequencies=np.sqrt(values) / (2.0 * np.pi),
-        shapes=np.ascontiguousarray(vectors.T).reshape(len(values), -1, 3),
+        shapes=np.ascontiguousarray(vectors.T).reshape(len(values), len(system.mesh.points), 3),
         residuals=residuals,
         rigid_modes=system.rigid.shape[1],
         direct_solver=name,
