@@ -12,8 +12,9 @@ from .surface import Surface, point_normals
 #: greatest motion has no nodal lines of its own: it runs in its own plane.
 _STILL_PATCH = 0.25
 
-#: Motion below this share of the greatest is rest (held faces).
+#: Motion below this share of the greatest is rest: held faces and what is close to them.
 _REST = 1e-4
+_NEARLY_REST = 2e-3
 
 
 @dataclass(frozen=True, eq=False, kw_only=True, slots=True)
@@ -97,8 +98,10 @@ def nodal_lines(surface: Surface, motion: np.ndarray) -> Segments:
     np.maximum.at(reach, surface.patches, np.abs(normal))
     normal = np.where(reach[surface.patches] < _STILL_PATCH * top, 1.0, normal)
     lines = zero_lines(surface.triangles, normal)
-    resting = (size[surface.triangles[lines.triangles]] < _REST * top).sum(axis=1)
+    around = size[surface.triangles[lines.triangles]]
+    held = (around < _REST * top).sum(axis=1) > 1
+    held |= around.max(axis=1, initial=0.0) < _NEARLY_REST * top
     ends = lines.places(surface.points).reshape(-1, 2, 3)
     length = np.linalg.norm(ends[:, 1] - ends[:, 0], axis=1)
     speck = 1e-6 * np.ptp(surface.points, axis=0).max()
-    return lines.only((resting < 2) & (length > speck))
+    return lines.only(~held & (length > speck))

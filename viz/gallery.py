@@ -17,6 +17,8 @@ from .view import View, choose_view, exaggeration, scale_bar_length
 #: Facets are split finer while the triangles stay below this number.
 _TRIANGLES = 30_000
 
+_MINUS = "\u2212"
+
 
 @dataclass(frozen=True, kw_only=True, slots=True)
 class Caption:
@@ -143,5 +145,8 @@ def _caption(mode: Mode) -> Caption:
     if mode.mixed:
         detail += ",  mixed"
     return Caption(
-        number=mode.index, name=mode.name, pitch=f"{hertz(mode.frequency_hz)} Hz", detail=detail
+        number=mode.index,
+        name=mode.name,
+        pitch=f"{hertz(mode.frequency_hz)} Hz",
+        detail=detail.replace("-", _MINUS),
     )

@@ -10,13 +10,14 @@ from pathlib import Path
 import numpy as np
 from PIL import Image, ImageDraw, ImageFont
 
-from .palette import INK, WHITE, motion_colours
+from .palette import ACCENT, GREY, INK, REST, WHITE, motion_colours, rgb
 
 #: Pictures are drawn this many times larger and then made small: smooth edges.
 FINER = 2
 
 #: Colours of an animation.
-_COLOURS = 128
+_COLOURS = 120
+_CLOSE = 12
 
 
 @cache
@@ -150,7 +151,7 @@ def save_webp(path: Path, frames: Sequence[Canvas], milliseconds: int) -> Path:
     One palette for all frames and no loss after it: thin coloured lines stay whole,
     and the file is smaller than a lossy one.
     """
-    palette = frames[0].image.quantize(_COLOURS, dither=Image.Dither.NONE)
+    palette = _palette(frames[0].image)
     first, *others = (
         frame.image.quantize(palette=palette, dither=Image.Dither.NONE).convert("RGB")
         for frame in frames
@@ -167,3 +168,15 @@ def save_webp(path: Path, frames: Sequence[Canvas], milliseconds: int) -> Path:
         method=2,
     )
     return path
+
+
+def _palette(image: Image.Image) -> Image.Image:
+    """Return a palette for pictures like this one, the colours of ground and lines exact."""
+    exact = np.array([rgb(colour) for colour in (WHITE, INK, ACCENT, REST, GREY)])
+    found = image.quantize(_COLOURS, dither=Image.Dither.NONE).getpalette() or []
+    common = np.array(found, dtype=int).reshape(-1, 3)[:_COLOURS]
+    # Close neighbours of the exact colours go: the search for the nearest is coarse.
+    near = np.abs(common[:, None] - exact[None]).max(axis=2).min(axis=1) < _CLOSE
+    palette = Image.new("P", (1, 1))
+    palette.putpalette(np.vstack([exact, common[~near]]).astype(np.uint8).tobytes())
+    return palette

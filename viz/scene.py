@@ -15,7 +15,7 @@ from .view import View
 
 #: Lines lie this share of the picture's height before the surface, so that they
 #: are not cut by it; in a parallel view they do not shift on the picture.
-_LIFT = 0.004
+_LIFT = 0.006
 
 #: Lamps as seen from the eye (right, up, towards it), and their strengths. Most light
 #: comes from everywhere: lightness tells how far a point moves, shade only its slope.
@@ -41,7 +41,7 @@ class Scene:
     """
 
     def __init__(self, surface: Surface, view: View, *, width: int, height: int, line: float):
-        self._surface, self._view = surface, view
+        self._surface, self._view, self._line = surface, view, line
         room = np.array([width, height]) / view.size
         self.pixels_per_metre = float(room.min())
         self._span = height / self.pixels_per_metre
@@ -49,7 +49,7 @@ class Scene:
         self._nodal = zero_lines(surface.triangles, np.ones(len(surface.points)))
 
         self._plotter = pv.Plotter(off_screen=True, window_size=[width, height], lighting="none")
-        self._plotter.background_color = WHITE
+        self._plotter.background_color = pv.Color(WHITE)
         # In software, samples for each pixel cost more than a larger picture made small.
         self._plotter.disable_anti_aliasing()
         window = self._plotter.render_window
@@ -77,10 +77,10 @@ class Scene:
         )
         actor.prop.interpolation = "Phong"
         # What may lie over what: nodal lines over outlines over the rest outline.
-        self._rest = self._add_lines(REST, line)
-        self._outline = self._add_lines(INK, line)
-        self._nodes = self._add_lines(ACCENT, 2.6 * line)
-        _set_lines(self._rest, self._outline_of(surface.points, lift=-0.5))
+        self._rest = self._add_lines(REST)
+        self._outline = self._add_lines(INK)
+        self._nodes = self._add_lines(ACCENT)
+        self._set_lines(self._rest, self._outline_of(surface.points, lift=-0.5), line)
 
     def set_mode(self, motion: np.ndarray) -> None:
         """Show a motion (p, 3), m as drawn, at the points of the surface."""
@@ -97,8 +97,8 @@ class Scene:
         self._write(self._body.GetPoints().GetData(), points)
         self._body.GetPoints().Modified()
         self._write(self._body.GetPointData().GetNormals(), normals)
-        _set_lines(self._outline, self._outline_of(points, lift=1.0))
-        _set_lines(self._nodes, self._front_nodal_lines(points))
+        self._set_lines(self._outline, self._outline_of(points, lift=1.0), self._line)
+        self._set_lines(self._nodes, self._front_nodal_lines(points), 2.6 * self._line)
         self._plotter.render()
         return np.asarray(self._plotter.screenshot(return_img=True))[..., :3]
 
@@ -133,11 +133,34 @@ class Scene:
         camera.parallel_scale = self._span / 2
         camera.clipping_range = (0.01 * away, 2 * away)
 
-    def _add_lines(self, colour: str, width: float) -> pv.Actor:
-        empty = pv.PolyData(np.zeros((2, 3)), lines=[2, 0, 1])
+    def _add_lines(self, colour: str) -> pv.Actor:
         return self._plotter.add_mesh(
-            empty, color=colour, line_width=width, lighting=False, reset_camera=False
+            pv.Plane(), color=colour, lighting=False, reset_camera=False, show_edges=False
         )
+
+    def _set_lines(self, actor: pv.Actor, ends: np.ndarray, width: float) -> None:
+        """Show line pieces with ends (2 k, 3), `width` pixels wide; nothing where k is 0.
+
+        Each piece is a strip that faces the eye and reaches a little over both its
+        ends: the renderer's own wide lines leave gaps between short pieces.
+        """
+        actor.SetVisibility(len(ends) > 0)
+        if len(ends) == 0:
+            return
+        eye, half = self._view.eye, width / 2 / self.pixels_per_metre
+        first, last = ends[0::2], ends[1::2]
+        along = last - first
+        along = along - np.outer(along @ eye, eye)
+        length = np.linalg.norm(along, axis=1, keepdims=True)
+        tiny = length[:, 0] < 1e-9 * self._span
+        along = np.where(tiny[:, None], self._view.right, along / np.where(length > 0, length, 1))
+        over, side = 0.6 * half * along, half * np.cross(eye, along)
+        corners = np.stack(
+            [first - over - side, last + over - side, last + over + side, first - over + side],
+            axis=1,
+        )
+        faces = np.arange(corners.shape[0] * 4).reshape(-1, 4)
+        actor.mapper.SetInputData(pv.PolyData.from_regular_faces(corners.reshape(-1, 3), faces))
 
     def _outline_of(self, points: np.ndarray, *, lift: float) -> np.ndarray:
         """Return the ends (2 k, 3) of the sharp edges and silhouettes the eye sees."""
@@ -156,15 +179,6 @@ class Scene:
         return seen.places(points) + 1.5 * _LIFT * self._span * self._view.eye
 
 
-def _set_lines(actor: pv.Actor, ends: np.ndarray) -> None:
-    """Show line pieces with ends (2 k, 3); nothing where there are none."""
-    count = len(ends) // 2
-    actor.SetVisibility(count > 0)
-    if count:
-        cells = np.column_stack([np.full(count, 2), np.arange(2 * count).reshape(-1, 2)])
-        actor.mapper.SetInputData(pv.PolyData(ends, lines=cells.ravel()))
-
-
 def check_rendering() -> None:
     """Render one small picture and check its colours; kills the process where OpenGL is missing.
 
@@ -174,7 +188,7 @@ def check_rendering() -> None:
         If the picture is not what was drawn.
     """
     plotter = pv.Plotter(off_screen=True, window_size=[32, 32], lighting="none")
-    plotter.background_color = WHITE
+    plotter.background_color = pv.Color(WHITE)
     plotter.add_mesh(pv.Plane(), color=ACCENT, lighting=False)
     plotter.camera_position = "xy"
     pixels = np.asarray(plotter.screenshot(return_img=True))[..., :3].astype(int)

@@ -77,7 +77,7 @@ def _name_lines(caption: Caption, width: float) -> list[str]:
 
 def _indent() -> float:
     """Return the room that a mode's number takes, pixels."""
-    return text_width("00", _NAME) + 14
+    return text_width("00", _NAME) + 18
 
 
 def _label(canvas: Canvas, caption: Caption, name: list[str], x: int, y: float) -> None:

@@ -121,9 +121,8 @@ def modes_csv(modes: Modes) -> str:
 
 
 def hertz(frequency: float) -> str:
-    """Return a frequency with the digits a maker can use: to 0.1 cent or so."""
-    decimals = 3 if frequency < 10 else 2 if frequency < 1000 else 1
-    return f"{frequency:.{decimals}f}"
+    """Return a frequency with the digits a maker can use."""
+    return f"{frequency:.3f}" if frequency < 10 else f"{frequency:.2f}"
 
 
 def cents(value: float | None) -> str:

@@ -1,0 +1,192 @@
+"""Line charts (the home of matplotlib)."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import numpy as np
+from matplotlib.axes import Axes
+from matplotlib.backends.backend_agg import FigureCanvasAgg
+from matplotlib.figure import Figure
+from matplotlib.ticker import FixedLocator, FuncFormatter, NullLocator
+
+from .palette import GREY, HAIR, INK, LINES
+
+if TYPE_CHECKING:
+    from ..fem.study.sweep import Sweep
+
+_DPI = 160
+_WIDTH = 10.4
+_SMALL, _TEXT, _TITLE = 9.5, 10.5, 15
+
+#: Room between two names at the ends of lines, points.
+_NAME_HEIGHT = 14.0
+
+
+def sweep_chart(sweep: Sweep, path: Path) -> None:
+    """Draw the frequencies of followed modes against what changes, as a PNG file.
+
+    Frequency is on a logarithmic scale, so that equal steps are equal intervals;
+    faint lines part the octaves. Each line carries its name at its end.
+
+    Parameters
+    ----------
+    sweep : Sweep
+    path : Path
+    """
+    x, labels = _abscissa(sweep)
+    tracks = sorted(
+        (track for track in sweep.tracks if any(f is not None for f in track.frequencies)),
+        key=lambda track: _last(track.frequencies),
+    )
+    height = max(5.2, 1.9 + 0.27 * len(tracks))
+    figure = Figure(figsize=(_WIDTH, height), dpi=_DPI, facecolor="white")
+    canvas = FigureCanvasAgg(figure)
+    axes = figure.add_axes((0.085, 0.95 / height, 0.56, 1.0 - 1.85 / height))
+    ends = []
+    for k, track in enumerate(tracks):
+        y = np.array([np.nan if f is None else f for f in track.frequencies], dtype=float)
+        colour = LINES[k % len(LINES)]
+        axes.plot(x, y, color=colour, linewidth=2.0, solid_capstyle="round", clip_on=False)
+        axes.plot(x, y, color=colour, marker="o", markersize=4.2, linestyle="none", clip_on=False)
+        known = np.flatnonzero(np.isfinite(y))[-1]
+        ends.append((float(x[known]), float(y[known]), track.name, colour))
+    _style(axes, x, labels)
+    _octaves(axes)
+    axes.set_xlabel(_axis_name(sweep.key), color=INK, fontsize=_TEXT, labelpad=8)
+    canvas.draw()
+    _names(axes, ends)
+    figure.text(
+        0.085,
+        1 - 0.34 / height,
+        f"Frequencies against {_axis_name(sweep.key)}",
+        color=INK,
+        fontsize=_TITLE,
+        fontweight="bold",
+        va="center",
+    )
+    figure.text(
+        0.085,
+        1 - 0.66 / height,
+        "Hz, logarithmic; equal heights are equal intervals, heavier rules are octaves of A",
+        color=GREY,
+        fontsize=_SMALL,
+        va="center",
+    )
+    canvas.print_png(path)
+
+
+def _abscissa(sweep: Sweep) -> tuple[np.ndarray, list[str]]:
+    """Return positions along the axis and their texts; words stand at equal steps."""
+    values = sweep.values
+    texts = [value if isinstance(value, str) else f"{value:g}" for value in values]
+    if any(isinstance(value, str) for value in values):
+        return np.arange(len(values), dtype=float), texts
+    return np.array(values, dtype=float), texts
+
+
+def _last(frequencies: tuple[float | None, ...]) -> float:
+    return [f for f in frequencies if f is not None][-1]
+
+
+def _axis_name(key: str) -> str:
+    """Return a key path as words: ``shape.slot_length`` becomes ``slot length``."""
+    return key.removeprefix("shape.").replace("_", " ").replace(".", " ")
+
+
+def _style(axes: Axes, x: np.ndarray, labels: list[str]) -> None:
+    axes.set_yscale("log")
+    axes.set_xlim(float(x.min()), float(x.max()))
+    low, high = axes.get_ylim()
+    axes.set_ylim(low / 1.06, high * 1.06)
+    for side in ("top", "right", "left"):
+        axes.spines[side].set_visible(False)
+    axes.spines["bottom"].set_color(GREY)
+    axes.spines["bottom"].set_position(("outward", 8))
+    axes.tick_params(axis="both", colors=INK, labelsize=_SMALL, length=0, pad=6)
+    axes.tick_params(axis="x", length=4, color=GREY)
+    shown = slice(None, None, max(1, len(x) // 9))
+    axes.xaxis.set_major_locator(FixedLocator(list(x[shown])))
+    texts = dict(zip(x.tolist(), labels, strict=True))
+    axes.xaxis.set_major_formatter(FuncFormatter(lambda v, _: texts.get(v, f"{v:g}")))
+    axes.yaxis.set_major_locator(FixedLocator(_round_frequencies(*axes.get_ylim())))
+    axes.yaxis.set_minor_locator(NullLocator())
+    axes.yaxis.set_major_formatter(FuncFormatter(lambda v, _: f"{v:,.0f}".replace(",", " ")))
+    axes.grid(axis="y", color=HAIR, linewidth=0.7)
+    axes.set_axisbelow(True)
+
+
+def _round_frequencies(low: float, high: float) -> list[float]:
+    """Return ticks 1, 2, 5 times powers of ten, or denser ones over a short range."""
+    steps: tuple[float, ...] = (1, 2, 5)
+    if high / low < 4:
+        steps = (1, 1.2, 1.5, 2, 2.5, 3, 4, 5, 6, 7, 8, 9)
+    powers = range(int(np.floor(np.log10(low))), int(np.ceil(np.log10(high))) + 1)
+    ticks = [s * 10.0**p for p in powers for s in steps if low <= s * 10.0**p <= high]
+    return ticks if len(ticks) > 1 else list(np.geomspace(low, high, 5).round(1))
+
+
+def _octaves(axes: Axes) -> None:
+    """Rule the octaves of A, 440 Hz times powers of two."""
+    low, high = axes.get_ylim()
+    for k in range(int(np.ceil(np.log2(low / 440))), int(np.floor(np.log2(high / 440))) + 1):
+        axes.axhline(440 * 2.0**k, color=HAIR, linewidth=2.2, zorder=0)
+        axes.annotate(
+            f"A{4 + k}",
+            (0.0, 440 * 2.0**k),
+            xycoords=("axes fraction", "data"),
+            xytext=(4, 2.5),
+            textcoords="offset points",
+            color=GREY,
+            fontsize=8,
+            zorder=0,
+        )
+
+
+def _names(axes: Axes, ends: list[tuple[float, float, str, str]]) -> None:
+    """Write each line's name beside its end, moved apart where they would touch."""
+    scale = 72.0 / _DPI
+    right = axes.get_xlim()[1]
+    wanted = [axes.transData.transform((x, y))[1] * scale for x, y, _, _ in ends]
+    heights = _apart(wanted, _NAME_HEIGHT)
+    for (x, y, name, colour), want, height in zip(ends, wanted, heights, strict=True):
+        edge = (right, y)
+        axes.annotate(
+            f"{name}   {y:.1f}",
+            edge,
+            xytext=(26, height - want),
+            textcoords="offset points",
+            color=colour,
+            fontsize=_SMALL,
+            va="center",
+            annotation_clip=False,
+            arrowprops={
+                "arrowstyle": "-",
+                "color": colour,
+                "linewidth": 0.7,
+                "alpha": 0.6,
+                "shrinkA": 2,
+                "shrinkB": 5,
+                "linestyle": "-" if x == right else ":",
+            },
+        )
+
+
+def _apart(wanted: list[float], gap: float) -> list[float]:
+    """Return ascending places at least `gap` apart, as near as can be to those wanted.
+
+    Groups that would touch are merged and centred on their mean.
+    """
+    groups: list[tuple[float, int]] = []
+    for place in wanted:
+        centre, count = place, 1
+        while groups:
+            before, size = groups[-1]
+            if centre - gap * (count - 1) / 2 - (before + gap * (size - 1) / 2) >= gap:
+                break
+            groups.pop()
+            centre = (centre * count + before * size) / (count + size)
+            count += size
+        groups.append((centre, count))
+    return [centre + gap * (k - (count - 1) / 2) for centre, count in groups for k in range(count)]
