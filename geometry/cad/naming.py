@@ -19,6 +19,10 @@ from .bodies import make, parts
 #: Distance below which a point lies on a face, as a share of the body's diagonal.
 _ON = 1e-6
 
+#: Slack of the boxes that sift the sources, as a share of the body's diagonal: the
+#: kernel's box of a turned spline may fall short of its crest.
+_ABOUT = 1e-2
+
 #: Share of a face's sample points that must lie on a source; all but round-off.
 _SHARE = 0.75
 
@@ -80,7 +84,7 @@ def match(cad: Any, sources: list[Source], points: np.ndarray, size: float) -> l
     for source in sources:
         if source.name in names or not len(points):
             continue
-        slack = _ON * size
+        slack = _ABOUT * size
         if np.any(points < source.box[0] - slack) or np.any(points > source.box[1] + slack):
             continue
         nearest, uv = cad.model.getClosestPoint(2, source.tag, points.ravel())

@@ -9,6 +9,7 @@ from pathlib import Path
 import numpy as np
 
 from ..anatomy import Anatomy, Kind
+from ..crossing import refuse_crossing
 from ..dimension import Dimension, Sort
 from ..errors import InputError
 from ..shape import Dimensions, Family
@@ -106,13 +107,22 @@ def _check_closed(d: Dimensions, points: tuple[Point2, ...]) -> None:
             allowed="two neighbouring points with r = 0, or none",
         )
     ring = shell.sampled(_loop(d))
-    if shell.crosses(ring) or ring[:, 0].min() < -1e-9 * np.ptp(ring):
+    if _tangled(ring) or ring[:, 0].min() < -1e-9 * np.ptp(ring):
         raise InputError(
             "crosses itself or the axis",
             key="profile",
             value=f"{len(points)} points",
             allowed="a section that does not; curve = straight follows the points",
         )
+
+
+def _tangled(ring: np.ndarray) -> bool:
+    """Return whether the closed line through points (n, 2) crosses or touches itself."""
+    try:
+        refuse_crossing([ring])
+    except InputError:
+        return True
+    return False
 
 
 def _check_walled(d: Dimensions, points: tuple[Point2, ...]) -> None:
@@ -144,7 +154,7 @@ def _check_walled(d: Dimensions, points: tuple[Point2, ...]) -> None:
             allowed="a curved or turned profile, or a closed section",
         )
     outer = shell.outer_samples(points, straight=_straight(d))
-    if shell.crosses(outer, ring=False) or outer[:, 0].min() < 0:
+    if shell.crosses(outer) or outer[:, 0].min() < 0:
         raise InputError(
             "crosses itself or the axis",
             key="profile",
@@ -154,7 +164,7 @@ def _check_walled(d: Dimensions, points: tuple[Point2, ...]) -> None:
     inner = shell.inner_samples(points, _walls(d), straight=_straight(d))
     along = np.einsum("ij,ij->i", np.diff(outer, axis=0), np.diff(inner, axis=0))
     folded = bool((along <= 0).any() or inner[:, 0].min() < 0)
-    if folded or shell.crosses(np.vstack([outer, inner[::-1]])):
+    if folded or _tangled(np.vstack([outer, inner[::-1]])):
         raise InputError(
             "is too thick: the inner surface crosses itself, the outer one or the axis",
             key="wall",

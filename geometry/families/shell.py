@@ -9,7 +9,7 @@ from itertools import pairwise
 
 import numpy as np
 from scipy.interpolate import BSpline as Piecewise
-from scipy.interpolate import PchipInterpolator, PPoly, make_interp_spline
+from scipy.interpolate import CubicSpline, PchipInterpolator, PPoly, make_interp_spline
 
 from ..solid import BSpline, Line, Loop, Point2, Segment
 from .plane import polygon
@@ -112,9 +112,9 @@ def heights(loop: Loop) -> tuple[float, float]:
     return min(found), max(found)
 
 
-def crosses(line: np.ndarray, *, ring: bool = True) -> bool:
-    """Return whether the polygon (or open polyline) through points (n, 2) crosses itself."""
-    a, b = (line, np.roll(line, -1, axis=0)) if ring else (line[:-1], line[1:])
+def crosses(line: np.ndarray) -> bool:
+    """Return whether the open polyline through points (n, 2) crosses itself."""
+    a, b = line[:-1], line[1:]
 
     def side(p: np.ndarray, q: np.ndarray, r: np.ndarray) -> np.ndarray:
         return np.sign((q - p)[..., 0] * (r - p)[..., 1] - (q - p)[..., 1] * (r - p)[..., 0])
@@ -195,7 +195,7 @@ def _smooth(
     # One segment per span: CAD kernels integrate areas and volumes face by face,
     # and lose digits where a face has inner knots.
     curve = _interpolated(points)
-    knots = np.unique(curve.t)
+    knots = curve.x
     outer = _pieces(curve, ["outer"] * (len(knots) - 1))
     inner: list[Segment] = []
     for first, last in pairwise(knots[::-1]):
@@ -207,25 +207,27 @@ def _smooth(
     return outer, inner
 
 
-def _interpolated(points: Sequence[Point2], *, periodic: bool = False) -> Piecewise:
+def _interpolated(points: Sequence[Point2], *, periodic: bool = False) -> CubicSpline:
     """Return the cubic spline through points by chord length.
 
     Its ends are level on the axis, so that the turned surface has no point
-    there, and free of curvature elsewhere.
+    there; elsewhere the last two spans are one cubic (not-a-knot), which keeps
+    the end's slope, and with it the tilt of the lip, accurate.
     """
     at = np.array(points)
     s = np.concatenate([[0.0], np.cumsum(np.linalg.norm(np.diff(at, axis=0), axis=1))])
     if periodic:
-        return make_interp_spline(s, at, k=3, bc_type="periodic")
-    bounds = [
-        [(1, np.array([sign, 0.0]))] if on_axis(p) else [(2, np.zeros(2))]
+        at[-1] = at[0]
+        return CubicSpline(s, at, bc_type="periodic")
+    ends = [
+        (1, np.array([sign, 0.0])) if on_axis(p) else "not-a-knot"
         for p, sign in ((points[0], 1.0), (points[-1], -1.0))
     ]
-    return make_interp_spline(s, at, k=3, bc_type=(bounds[0], bounds[1]))
+    return CubicSpline(s, at, bc_type=(ends[0], ends[1]))  # pyright: ignore[reportArgumentType]
 
 
-def _stations(curve: Piecewise) -> np.ndarray:
-    knots = np.unique(curve.t)
+def _stations(curve: CubicSpline) -> np.ndarray:
+    knots = curve.x
     steps = np.linspace(knots[:-1], knots[1:], _FINE, endpoint=False).T.ravel()
     return np.append(steps, knots[-1])
 
@@ -233,32 +235,26 @@ def _stations(curve: Piecewise) -> np.ndarray:
 def _offset(points: Sequence[Point2], walls: Sequence[float], s: np.ndarray) -> np.ndarray:
     """Return points (n, 2) of the inner curve at parameters s (n,) of the outer one."""
     curve = _interpolated(points)
-    wall = PchipInterpolator(np.unique(curve.t), np.asarray(walls))(s)
+    wall = PchipInterpolator(curve.x, np.asarray(walls))(s)
     d = curve.derivative()(s)
     d /= np.linalg.norm(d, axis=1)[:, None]
     normals = inward(points) * np.stack([-d[:, 1], d[:, 0]], axis=1)
     laid = curve(s) + wall[:, None] * normals
-    for at, point in ((curve.t[0], points[0]), (curve.t[-1], points[-1])):
+    for at, point in ((curve.x[0], points[0]), (curve.x[-1], points[-1])):
         if on_axis(point):
             laid[s == at, 0] = 0.0
     return laid
 
 
-def _pieces(curve: Piecewise, names: Sequence[str | None]) -> list[Segment]:
-    """Return each span of a spline as a segment of its own."""
-    knots = np.unique(curve.t[curve.k : len(curve.t) - curve.k])
-    return [
-        _piece(curve, np.array(span), name)
-        for span, name in zip(pairwise(knots), names, strict=True)
-    ]
-
-
-def _piece(curve: Piecewise, knots: np.ndarray, face: str | None) -> BSpline:
-    """Return a cubic spline between two of its knots: same values, same end slopes."""
-    slope = curve.derivative()
-    bounds = ([(1, slope(knots[0]))], [(1, slope(knots[-1]))])
-    part = make_interp_spline(knots, curve(knots), k=3, bc_type=bounds)
-    return _record(part, face)
+def _pieces(curve: CubicSpline, names: Sequence[str | None]) -> list[Segment]:
+    """Return each span of a spline as a segment of its own, by its four poles."""
+    at, slope = curve(curve.x), curve(curve.x, 1)
+    found: list[Segment] = []
+    for i, (name, h) in enumerate(zip(names, np.diff(curve.x), strict=True)):
+        poles = (at[i], at[i] + h / 3 * slope[i], at[i + 1] - h / 3 * slope[i + 1], at[i + 1])
+        knots = np.repeat([0.0, h], 4)
+        found.append(_record(Piecewise(knots, np.array(poles), 3), name))
+    return found
 
 
 def _record(curve: Piecewise, face: str | None) -> BSpline:
