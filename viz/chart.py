@@ -24,18 +24,21 @@ _SMALL, _TEXT, _TITLE = 9.5, 10.5, 15
 _NAME_HEIGHT = 14.0
 
 
-def sweep_chart(sweep: Sweep, path: Path) -> None:
+def sweep_chart(sweep: Sweep, path: Path, *, label: str | None = None) -> None:
     """Draw the frequencies of followed modes against what changes, as a PNG file.
 
     Frequency is on a logarithmic scale, so that equal steps are equal intervals;
-    faint lines part the octaves. Each line carries its name at its end.
+    the rules are octaves of A. Each line carries its name at its end.
 
     Parameters
     ----------
     sweep : Sweep
     path : Path
+    label : str, optional
+        What changes, with its unit; default the key in words.
     """
     x, labels = _abscissa(sweep)
+    what = label or _axis_name(sweep.key)
     tracks = sorted(
         (track for track in sweep.tracks if any(f is not None for f in track.frequencies)),
         key=lambda track: _last(track.frequencies),
@@ -53,14 +56,13 @@ def sweep_chart(sweep: Sweep, path: Path) -> None:
         known = np.flatnonzero(np.isfinite(y))[-1]
         ends.append((float(x[known]), float(y[known]), track.name, colour))
     _style(axes, x, labels)
-    _octaves(axes)
-    axes.set_xlabel(_axis_name(sweep.key), color=INK, fontsize=_TEXT, labelpad=8)
+    axes.set_xlabel(what, color=INK, fontsize=_TEXT, labelpad=8)
     canvas.draw()
     _names(axes, ends)
     figure.text(
         0.085,
         1 - 0.34 / height,
-        f"Frequencies against {_axis_name(sweep.key)}",
+        f"Frequencies against {what}",
         color=INK,
         fontsize=_TITLE,
         fontweight="bold",
@@ -69,7 +71,7 @@ def sweep_chart(sweep: Sweep, path: Path) -> None:
     figure.text(
         0.085,
         1 - 0.66 / height,
-        "Hz, logarithmic; equal heights are equal intervals, heavier rules are octaves of A",
+        "Hz on a logarithmic scale: equal heights are equal intervals",
         color=GREY,
         fontsize=_SMALL,
         va="center",
@@ -110,52 +112,41 @@ def _style(axes: Axes, x: np.ndarray, labels: list[str]) -> None:
     axes.xaxis.set_major_locator(FixedLocator(list(x[shown])))
     texts = dict(zip(x.tolist(), labels, strict=True))
     axes.xaxis.set_major_formatter(FuncFormatter(lambda v, _: texts.get(v, f"{v:g}")))
-    axes.yaxis.set_major_locator(FixedLocator(_round_frequencies(*axes.get_ylim())))
+    ticks = _ticks(*axes.get_ylim())
+    axes.yaxis.set_major_locator(FixedLocator([hz for hz, _ in ticks]))
     axes.yaxis.set_minor_locator(NullLocator())
-    axes.yaxis.set_major_formatter(FuncFormatter(lambda v, _: f"{v:,.0f}".replace(",", " ")))
+    names = dict(ticks)
+    axes.yaxis.set_major_formatter(FuncFormatter(lambda v, _: names.get(v, "")))
     axes.grid(axis="y", color=HAIR, linewidth=0.7)
     axes.set_axisbelow(True)
 
 
-def _round_frequencies(low: float, high: float) -> list[float]:
-    """Return ticks 1, 2, 5 times powers of ten, or denser ones over a short range."""
-    steps: tuple[float, ...] = (1, 2, 5)
-    if high / low < 4:
-        steps = (1, 1.2, 1.5, 2, 2.5, 3, 4, 5, 6, 7, 8, 9)
-    powers = range(int(np.floor(np.log10(low))), int(np.ceil(np.log10(high))) + 1)
-    ticks = [s * 10.0**p for p in powers for s in steps if low <= s * 10.0**p <= high]
-    return ticks if len(ticks) > 1 else list(np.geomspace(low, high, 5).round(1))
-
-
-def _octaves(axes: Axes) -> None:
-    """Rule the octaves of A, 440 Hz times powers of two."""
-    low, high = axes.get_ylim()
-    for k in range(int(np.ceil(np.log2(low / 440))), int(np.floor(np.log2(high / 440))) + 1):
-        axes.axhline(440 * 2.0**k, color=HAIR, linewidth=2.2, zorder=0)
-        axes.annotate(
-            f"A{4 + k}",
-            (0.0, 440 * 2.0**k),
-            xycoords=("axes fraction", "data"),
-            xytext=(4, 2.5),
-            textcoords="offset points",
-            color=GREY,
-            fontsize=8,
-            zorder=0,
-        )
+def _ticks(low: float, high: float) -> list[tuple[float, str]]:
+    """Return frequencies to rule and their texts: octaves of A, or round ones in a short range."""
+    first, last = int(np.ceil(np.log2(low / 440))), int(np.floor(np.log2(high / 440)))
+    octaves = [(440 * 2.0**k, f"A{4 + k}   {440 * 2.0**k:g}") for k in range(first, last + 1)]
+    if len(octaves) > 2:
+        return octaves
+    count = 5
+    step = (high - low) / count
+    power = 10.0 ** np.floor(np.log10(step))
+    step = next(s * power for s in (1, 2, 5, 10) if s * power >= step)
+    ticks = np.arange(np.ceil(low / step), np.floor(high / step) + 1) * step
+    return [(float(hz), f"{hz:g}") for hz in ticks]
 
 
 def _names(axes: Axes, ends: list[tuple[float, float, str, str]]) -> None:
     """Write each line's name beside its end, moved apart where they would touch."""
     scale = 72.0 / _DPI
-    right = axes.get_xlim()[1]
-    wanted = [axes.transData.transform((x, y))[1] * scale for x, y, _, _ in ends]
+    right = axes.transData.transform((axes.get_xlim()[1], 1.0))[0] * scale
+    at = [axes.transData.transform((x, y)) * scale for x, y, _, _ in ends]
+    wanted = [place[1] for place in at]
     heights = _apart(wanted, _NAME_HEIGHT)
-    for (x, y, name, colour), want, height in zip(ends, wanted, heights, strict=True):
-        edge = (right, y)
+    for (x, y, name, colour), place, height in zip(ends, at, heights, strict=True):
         axes.annotate(
             f"{name}   {y:.1f}",
-            edge,
-            xytext=(26, height - want),
+            (x, y),
+            xytext=(right - place[0] + 26, height - place[1]),
             textcoords="offset points",
             color=colour,
             fontsize=_SMALL,
@@ -168,7 +159,6 @@ def _names(axes: Axes, ends: list[tuple[float, float, str, str]]) -> None:
                 "alpha": 0.6,
                 "shrinkA": 2,
                 "shrinkB": 5,
-                "linestyle": "-" if x == right else ":",
             },
         )
 
