@@ -10,6 +10,7 @@ from __future__ import annotations
 import contextlib
 import io
 import os
+import warnings
 from collections.abc import Iterator, Mapping
 from pathlib import Path
 from typing import Any
@@ -18,8 +19,10 @@ import meshio
 import numpy as np
 
 from .errors import InputError, ToolError
+from .intake import mesh_of
 from .mesh import Mesh
 from .shape import MM
+from .unit import UNITS
 
 #: Suffixes of formats that keep second-order tetrahedra in the right node order.
 WRITTEN = (".msh", ".inp", ".vtu", ".vtk", ".bdf", ".nas", ".fem", ".mdpa", ".vol", ".exo", ".xdmf")
@@ -68,6 +71,12 @@ def write_mesh(path: Path, mesh: Mesh) -> None:
                 f"{path.name}: this format needs the Python package {error.name!r}, "
                 "which is not installed; .msh, .vtu and .inp need nothing more"
             ) from None
+        except (Exception, SystemExit) as error:
+            # Writers raise whatever a value they cannot print makes them stumble over.
+            raise ToolError(
+                f"{path.name}: could not be written ({type(error).__name__} in the format's "
+                "writer); try .msh or .vtu"
+            ) from None
         if not _holds(kept, mesh):
             raise ToolError(f"{path.name}: the file read back is not the mesh; try .msh or .vtu")
 
@@ -92,6 +101,59 @@ def write_vtu(path: Path, mesh: Mesh, point_data: Mapping[str, np.ndarray]) -> N
         meshio.write(temporary, record, file_format="vtu", compression="zlib")
 
 
+def read_mesh(path: Path, unit: str = "mm") -> Mesh:
+    """Read a body from a mesh file that some other tool wrote.
+
+    Straight tetrahedra are raised to second order; hexahedra, wedges and
+    pyramids are cut into tetrahedra first. Named groups of triangles, and
+    node sets, become named faces; the rest of the surface is parted by angle
+    (`geometry.facing`).
+
+    Parameters
+    ----------
+    path : Path
+    unit : str
+        Unit of the file's coordinates (`geometry.unit.UNITS`).
+
+    Raises
+    ------
+    InputError
+        If the file cannot be read, holds no cells that can be used, or is not
+        one sound body (`geometry.soundness`).
+    """
+    return mesh_of(_read(path), UNITS[unit] * MM)
+
+
+def _read(path: Path) -> meshio.Mesh:
+    form = _form(path)
+    try:
+        with _silence():
+            return meshio.read(path, file_format=form)
+    except ModuleNotFoundError as error:
+        raise ToolError(
+            f"{path.name}: this format needs the Python package {error.name!r}, "
+            "which is not installed; save the mesh as .msh, .vtu or .inp"
+        ) from None
+    except (Exception, SystemExit) as error:
+        # Readers raise whatever a damaged file makes them stumble over, or exit.
+        reason = str(error).strip().splitlines()
+        told = f" ({reason[0]})" if reason and not isinstance(error, SystemExit) else ""
+        raise InputError(f"cannot be read as a {path.suffix} mesh{told}") from None
+
+
+def _form(path: Path) -> str | None:
+    """Return the format of a .msh file, which two tools use; None: by its suffix."""
+    if path.suffix.lower() != ".msh":
+        return None
+    with path.open("rb") as file:
+        start = file.read(4096).lstrip()
+    if start.startswith(b"$"):
+        return "gmsh"
+    if start.startswith(b"("):
+        return "ansys"
+    raise InputError("is no .msh mesh: it does not begin like one")
+
+
 def _write_as(path: Path, suffix: str, mesh: Mesh) -> None:
     """Write `mesh` to `path` with the faces as the format can hold them."""
     points, cells = mesh.points / MM, np.asarray(mesh.cells, np.int64)
@@ -104,7 +166,8 @@ def _write_as(path: Path, suffix: str, mesh: Mesh) -> None:
         path.write_text(text.replace("TYPE=C3D10MH", "TYPE=C3D10", 1), encoding="utf-8")
         return
     if suffix not in _FACES_AS_CELLS or not mesh.faces:
-        meshio.write(path, meshio.Mesh(points, [("tetra10", cells)]))
+        # Round-off below a picometre overflows the fixed columns of some formats.
+        meshio.write(path, meshio.Mesh(np.round(points, 9) + 0.0, [("tetra10", cells)]))
         return
     # One copy of a triangle for each face it belongs to: a patch's triangles
     # are also its face's, and a cell carries only one tag.
@@ -155,5 +218,10 @@ def _beside(path: Path) -> Iterator[Path]:
 @contextlib.contextmanager
 def _silence() -> Iterator[None]:
     """Keep meshio's own prints off the terminal: errors are raised, not printed."""
-    with contextlib.redirect_stdout(io.StringIO()), contextlib.redirect_stderr(io.StringIO()):
+    with (
+        warnings.catch_warnings(),
+        contextlib.redirect_stdout(io.StringIO()),
+        contextlib.redirect_stderr(io.StringIO()),
+    ):
+        warnings.simplefilter("ignore")
         yield
