@@ -12,14 +12,18 @@ from .pairs import CENTS
 #: tuned bars: 6 Hz below 1 kHz, 15 Hz below 2 kHz, 30 Hz above.
 _NEAR = ((1000.0, 6.0), (2000.0, 15.0), (np.inf, 30.0))
 
+#: The two directions of one mode (letters a and b) nearer than this, in cents, may
+#: well be parted by the mesh alone.
+_TWINS = 2.0
+
 
 def beat_warnings(
     frequencies: Sequence[float] | np.ndarray, names: Sequence[str]
 ) -> tuple[str, ...]:
     """Return one sentence for every two neighbours in frequency that beat or blend.
 
-    Pairs (within 0.5 cent of each other) are left out: their real split comes
-    from the part, and is told elsewhere.
+    Pairs are left out (modes within 0.5 cent of each other, and the two directions
+    of one mode within 2): their real split comes from the part, not from the model.
 
     Parameters
     ----------
@@ -31,7 +35,10 @@ def beat_warnings(
         low, high = float(frequencies[i]), float(frequencies[i + 1])
         gap = high - low
         limit = next(near for top, near in _NEAR if 0.5 * (low + high) < top)
-        if low <= 0.0 or gap > limit or 1200.0 * np.log2(high / low) <= CENTS:
+        if low <= 0.0 or gap > limit:
+            continue
+        twins = names[i][-2:] in (" a", " b") and names[i][:-1] == names[i + 1][:-1]
+        if 1200.0 * np.log2(high / low) <= (_TWINS if twins else CENTS):
             continue
         warnings.append(
             f"{names[i]!r} at {low:.1f} Hz and {names[i + 1]!r} at {high:.1f} Hz are only "

@@ -101,8 +101,8 @@ def _run(parts: np.ndarray, numbers: Sequence[int]) -> str:
 
 
 def _marks(going: np.ndarray, parts: np.ndarray) -> str:
-    """Return one mark a prong, the first that moves being +."""
-    moving = parts >= _STILL
+    """Return one mark a prong, the first that moves being +; 0 for one that hardly does."""
+    moving = (parts >= _STILL) & (np.abs(going) >= _FAINT * np.abs(going).max())
     lead = going[int(np.flatnonzero(moving)[0])]
     signs = np.where(going * lead > 0.0, "+", "-")
     return " ".join("0" if not m else str(s) for m, s in zip(moving, signs, strict=True))
@@ -142,6 +142,6 @@ def _leading(slices: Slices, mode: int, share: int, count: int) -> int:
         part = slices.shares(limb)[mode] * slices.energy[limb, mode, mode]
         amounts += part[:4]
         total += part.sum()
-    if share < 4 and amounts[share] >= 0.25 * total:
+    if share < 4 and amounts[share] >= _STILL * total:
         return share
     return int(amounts.argmax())
