@@ -8,8 +8,9 @@ from dataclasses import replace
 from itertools import pairwise
 
 import numpy as np
+from numpy.polynomial import Chebyshev
 from scipy.interpolate import BSpline as Piecewise
-from scipy.interpolate import CubicSpline, PchipInterpolator, PPoly, make_interp_spline
+from scipy.interpolate import CubicSpline, PchipInterpolator, make_interp_spline
 
 from ..solid import BSpline, Line, Loop, Point2, Segment
 from .plane import polygon
@@ -17,8 +18,8 @@ from .plane import polygon
 _FINE = 8
 """Samples per span of a curve."""
 
-_DEGREE = 7
-"""Degree of the inner curve's spans: follows the true parallel to about 1e-6 of the wall."""
+_DEGREE = 9
+"""Degree of the inner curve's spans: follows the true parallel to about 1e-5 of the wall."""
 
 
 def on_axis(point: Point2) -> bool:
@@ -100,15 +101,19 @@ def sampled(loop: Loop) -> np.ndarray:
 
 
 def heights(loop: Loop) -> tuple[float, float]:
-    """Return the lowest and the highest z of a loop of lines and B-splines."""
+    """Return the lowest and the highest z of a loop of lines and one-span B-splines."""
     found: list[float] = []
     for segment in loop:
         found += [p[1] for p in _ends([segment])]
         if isinstance(segment, BSpline):
-            poles = np.array(segment.poles)[:, 1]
-            curve = Piecewise(np.array(segment.knots), poles, segment.degree)
-            turns = PPoly.from_spline(curve.derivative()).roots(extrapolate=False)
-            found += [float(z) for z in curve(turns[np.isfinite(turns)])]
+            curve = Piecewise(
+                np.array(segment.knots), np.array(segment.poles)[:, 1], segment.degree
+            )
+            span = [segment.knots[0], segment.knots[-1]]
+            height = Chebyshev.interpolate(curve, segment.degree, domain=span)
+            turns = height.deriv().roots()
+            level = turns[np.abs(turns.imag) < 1e-9 * span[1]].real
+            found += [float(z) for z in curve(level[(level > span[0]) & (level < span[1])])]
     return min(found), max(found)
 
 
