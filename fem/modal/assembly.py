@@ -21,7 +21,7 @@ from .pattern import Pattern, make_pattern
 
 #: Degrees of exactness of the quadrature rules. Straight cells: exact.
 STRAIGHT_STIFFNESS, STRAIGHT_MASS = 2, 4
-CURVED_STIFFNESS, CURVED_MASS = 5, 7
+CURVED_STIFFNESS, CURVED_MASS = 4, 6
 
 #: A mid-side node nearer than this share of the edge to its middle is straight.
 _STRAIGHT = 1e-10

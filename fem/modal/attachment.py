@@ -93,7 +93,7 @@ def _nearest(mesh: Mesh, point: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
     closest = np.argsort(np.linalg.norm(centres - point, axis=1) - reach, kind="stable")
     nodes = nodes[closest[:_CANDIDATES]]
     middle, span = np.full((len(nodes), 2), 1.0 / 3.0), 1.0
-    grid = _grid(_FINE)
+    grid, rows = _grid(_FINE), np.arange(len(nodes))
     # Sample each facet, then sample again around its best sample, and so on:
     # robust on strongly curved facets, where Newton's method is not.
     for _ in range(8):
@@ -101,15 +101,13 @@ def _nearest(mesh: Mesh, point: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
         local = np.clip(local, 0.0, 1.0)
         excess = np.maximum(local.sum(axis=-1, keepdims=True) - 1.0, 0.0)
         local = np.clip(local - 0.5 * excess, 0.0, 1.0)
-        shapes = _values(local)
-        places = np.einsum("fqa,fai->fqi", shapes, nodes)
-        distance = np.linalg.norm(places - point, axis=-1)
-        best = distance.argmin(axis=1)
-        rows = np.arange(len(nodes))
+        places = np.einsum("fqa,fai->fqi", _values(local), nodes)
+        best = np.linalg.norm(places - point, axis=-1).argmin(axis=1)
         middle, span = local[rows, best], span * 0.25
-    winner = int(distance[rows, best].argmin())
+    found = np.einsum("fa,fai->fi", facet_values(middle), nodes)
+    winner = int(np.linalg.norm(found - point, axis=1).argmin())
     geometry = facet_geometry(nodes[winner : winner + 1], middle[winner][None], np.ones(1))
-    return places[winner, best[winner]], geometry.normals[0, 0]
+    return found[winner], geometry.normals[0, 0]
 
 
 def _grid(steps: int) -> np.ndarray:

@@ -17,7 +17,10 @@ _PIECE = 64
 _ROUNDING = 1e-12
 
 #: Directions below this share of their block are made orthogonal once more.
-_WEAK = 1e-5
+_WEAK = 1e-4
+
+#: Directions of a block down to this share of its strongest are normalised together.
+_TRUSTED = 1e-6
 
 #: Fresh vectors that probe for what the space has missed, and how often they are
 #: multiplied by the operator.
@@ -183,31 +186,58 @@ class Space:
         root : (k, b) float
             vectors = V root, up to what lies in the space already.
         """
-        root = np.eye(vectors.shape[1])
-        start = None
-        while True:
-            mass = self._apply_mass(vectors)
-            size = np.einsum("ij,ij->j", vectors, mass)
-            start = np.sqrt(size.max(initial=0.0)) if start is None else start
-            for other in [self._known, self._basis, *(aside or [])]:
-                if other is not None:
-                    vectors = _remove(vectors, mass, other)
-            mass = self._apply_mass(vectors)
-            square, turn = sla.eigh(vectors.T @ mass)
-            norms = np.sqrt(np.maximum(square, 0.0))
-            keep = norms > _ROUNDING * start
-            norms, turn = norms[keep], turn[:, keep]
-            vectors, mass = vectors @ (turn / norms), mass @ (turn / norms)
-            root = (norms[:, None] * turn.T) @ root
-            if not keep.any() or norms.min() > _WEAK * start:
-                return vectors, mass, root
-            start = 1.0
+        mass = self._apply_mass(vectors)
+        start = np.sqrt(np.einsum("ij,ij->j", vectors, mass).max(initial=0.0))
+        others = [self._known, self._basis, *(aside or [])]
+        vectors = _without(vectors, mass, others)
+        vectors, mass, root = _normalised(vectors, self._apply_mass(vectors), _ROUNDING * start)
+        if len(root) and np.linalg.norm(root, axis=1).min() < _WEAK * start:
+            # Little was left: what rounding left of the others weighs more now. A
+            # second time is enough, unless nothing new was there at all.
+            vectors = _without(vectors, mass, others)
+            vectors, mass, again = _normalised(vectors, self._apply_mass(vectors), 0.5)
+            root = again @ root
+        return vectors, mass, root
 
 
-def _remove(vectors: np.ndarray, mass: np.ndarray, other) -> np.ndarray:
-    if isinstance(other, _Columns):
-        return other.remove(vectors, mass)
-    return vectors - other @ (other.T @ mass)
+def _normalised(
+    vectors: np.ndarray, mass: np.ndarray, floor: float
+) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+    """Return V, M V, root with V M-orthonormal and vectors = V root; drop what is below floor."""
+    rest, rest_mass = vectors, mass
+    found: list[tuple[np.ndarray, np.ndarray]] = []
+    while rest.shape[1]:
+        square, turn = sla.eigh(rest.T @ rest_mass)
+        norms = np.sqrt(np.maximum(square, 0.0))
+        keep = norms > max(floor, _TRUSTED * norms.max())
+        if not keep.any():
+            break
+        part, weak = turn[:, keep] / norms[keep], turn[:, ~keep]
+        new, new_mass = rest @ part, rest_mass @ part
+        found.append((new, new_mass))
+        # Products of vectors tell directions this much weaker from rounding only
+        # when the strong ones are gone.
+        rest, rest_mass = rest @ weak, rest_mass @ weak
+        along = new.T @ rest_mass
+        rest, rest_mass = rest - new @ along, rest_mass - new_mass @ along
+    if not found:
+        return vectors[:, :0], mass[:, :0], np.zeros((0, vectors.shape[1]))
+    new, new_mass = (np.hstack(parts) for parts in zip(*found, strict=True))
+    triangle = sla.cholesky(new.T @ new_mass)
+    new, new_mass = (sla.solve_triangular(triangle, x.T, trans=1).T for x in (new, new_mass))
+    return new, new_mass, new.T @ mass
+
+
+def _without(
+    vectors: np.ndarray, mass: np.ndarray, others: list[np.ndarray | _Columns | None]
+) -> np.ndarray:
+    """Return vectors less their parts along other M-orthonormal ones."""
+    for other in others:
+        if isinstance(other, _Columns):
+            vectors = other.remove(vectors, mass)
+        elif other is not None:
+            vectors = vectors - other @ (other.T @ mass)
+    return vectors
 
 
 class _Columns:

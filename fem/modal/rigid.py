@@ -68,5 +68,5 @@ def rigid_basis(
     basis = constraint.to_vectors(constraint.to_unknowns(motions @ allowed))
     for _ in range(2):
         root = sla.cholesky(basis.T @ apply_mass(basis))
-        basis = sla.solve_triangular(root, basis.T, trans="T").T
+        basis = sla.solve_triangular(root, basis.T, trans=1).T
     return np.ascontiguousarray(basis)

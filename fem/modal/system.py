@@ -64,11 +64,11 @@ class System:
     @property
     def unknowns(self) -> int:
         """Number of unknowns."""
-        return self.stiffness.shape[0]
+        return self.constraint.unknowns
 
     def apply_mass(self, vectors: np.ndarray) -> np.ndarray:
         """Return M v, (3n, k), of vectors (3n, k)."""
-        flat = np.ascontiguousarray(vectors).reshape(self.mass.shape[0], -1)
+        flat = np.ascontiguousarray(vectors).reshape(len(self.mesh.points), -1)
         return (self.mass @ flat).reshape(vectors.shape)
 
     def apply_stiffness(self, vectors: np.ndarray) -> np.ndarray:
@@ -119,7 +119,7 @@ def build_system(case: Case, mesh: Mesh, pattern: Pattern | None = None) -> Syst
     mass = bare.mass
 
     def apply_mass(vectors: np.ndarray) -> np.ndarray:
-        return (mass @ vectors.reshape(mass.shape[0], -1)).reshape(vectors.shape)
+        return (mass @ vectors.reshape(len(mesh.points), -1)).reshape(vectors.shape)
 
     return System(
         mesh=mesh,

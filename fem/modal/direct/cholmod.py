@@ -2,13 +2,18 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 import cvxopt
+import cvxopt.cholmod
 import numpy as np
 import scipy.sparse as sp
-from cvxopt import cholmod
 
 from ....geometry.errors import SolveError
 from .superlu import SuperLU
+
+# A compiled module without type information.
+_cholmod: Any = cvxopt.cholmod
 
 
 class Cholmod:
@@ -18,29 +23,29 @@ class Cholmod:
     negative_pivots: int | None = None
 
     def __init__(self, upper: sp.csr_matrix) -> None:
-        cholmod.options["supernodal"] = 2
-        n = upper.shape[0]
+        _cholmod.options["supernodal"] = 2
+        n = len(upper.indptr) - 1
         # The upper triangle by rows is the lower one by columns, which is what
         # the library reads; entries come in the order of our own data.
         rows = cvxopt.matrix(upper.indices.astype(np.int64))
         columns = cvxopt.matrix(np.repeat(np.arange(n), np.diff(upper.indptr)))
-        self._matrix = cvxopt.spmatrix(1.0, rows, columns, (n, n))
+        self._matrix: Any = cvxopt.spmatrix(1.0, rows, columns, (n, n))
         self._size = n
         self._fill(upper.data)
-        self._factors = _guarded(cholmod.symbolic, self._matrix)
-        _guarded(cholmod.numeric, self._matrix, self._factors)
+        self._factors = _guarded(_cholmod.symbolic, self._matrix)
+        _guarded(_cholmod.numeric, self._matrix, self._factors)
 
     def numeric(self, values: np.ndarray) -> None:
         """Factorise anew with new values of the same pattern."""
         self._fill(values)
-        _guarded(cholmod.numeric, self._matrix, self._factors)
+        _guarded(_cholmod.numeric, self._matrix, self._factors)
 
     def solve(self, right: np.ndarray) -> np.ndarray:
         """Return x of A x = b for one right side (n,) or several (n, k)."""
         if self._factors is None:
             raise ValueError("the factorisation is closed")
         x = cvxopt.matrix(np.asfortranarray(right.reshape(self._size, -1)))
-        cholmod.solve(self._factors, x)
+        _cholmod.solve(self._factors, x)
         return np.array(x).reshape(right.shape)
 
     def close(self) -> None:

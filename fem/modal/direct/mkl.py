@@ -75,7 +75,7 @@ class Pardiso:
         self._integer = np.int64 if wide else np.int32
         self._call_library = _library.pardiso_64 if wide else _library.pardiso
         self._kind = _POSITIVE if positive else _INDEFINITE
-        self._n = upper.shape[0]
+        self._n = len(upper.indptr) - 1
         self._indptr = np.ascontiguousarray(upper.indptr, self._integer)
         self._indices = np.ascontiguousarray(upper.indices, self._integer)
         self._data = np.ascontiguousarray(upper.data, float)
