@@ -2,7 +2,12 @@ import numpy as np
 import pytest
 from modewright.fem.modal.theory.disc import disc_frequency, disc_root
 from modewright.fem.modal.theory.plate import plate_frequencies, plate_modes
-from modewright.fem.modal.theory.ring import ring_extensional, ring_in_plane, ring_out_of_plane
+from modewright.fem.modal.theory.ring import (
+    ring_extensional,
+    ring_in_plane,
+    ring_out_of_plane,
+    ring_torsional,
+)
 from modewright.geometry.anatomy import RingSize
 
 SHAPES = [(2, 0), (0, 1), (3, 0), (1, 1), (4, 0), (5, 0), (2, 1), (0, 2), (3, 1), (1, 2)]
@@ -133,3 +138,7 @@ def test_ring_of_nafems_test_6():
     breathing = ring_extensional(0, ring, 200e9, 8000.0)
     assert breathing == pytest.approx(np.sqrt(200e9 / 8000.0) / (2 * np.pi), rel=1e-12)
     assert ring_extensional(1, ring, 200e9, 8000.0) == pytest.approx(np.sqrt(2) * breathing)
+    # round section: Love's (1 + nu + n^2) G / (rho R^2)
+    twisting = [ring_torsional(n, ring, 200e9, 200e9 / 2.6, 8000.0) for n in (0, 1)]
+    love = np.sqrt(np.array([1.3, 2.3]) * 200e9 / 2.6 / 8000.0) / (2 * np.pi)
+    assert twisting == pytest.approx(love, rel=1e-12)

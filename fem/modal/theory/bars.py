@@ -73,8 +73,11 @@ class BarTheory:
         kappa = "5/6" if self._material.orthotropic else "after Cowper 1966"
         if self._material.orthotropic and self._sections.form != "rectangle":
             kappa = "after Cowper 1966 at nu = 0"
+        form = self._form
+        if self._bent and motion == "flatwise":
+            form = ", varying section, bent axis"
         return float(frequency), (
-            f"Timoshenko beam (1921), kappa {kappa}{self._form}; Euler-Bernoulli: {limit:.6g} Hz"
+            f"Timoshenko beam (1921), kappa {kappa}{form}; Euler-Bernoulli: {limit:.6g} Hz"
         )
 
     def _torsion(self, n: int) -> Prediction | None:
@@ -87,7 +90,11 @@ class BarTheory:
             "torsion",
             lambda: torsion_frequencies(sections, shear, material.density, self._held, last),
         )
-        warping = "" if sections.form != "rectangle" else ", warping free"
+        warping = ""
+        if sections.form == "rectangle":
+            warping = ", warping free" + (
+                "" if self._held == "free" else " (a clamp stiffens wide strips)"
+            )
         return float(known[n - 1]), f"Saint-Venant torsion (1855){warping}{self._form}"
 
     def _axial(self, n: int) -> Prediction | None:
@@ -102,7 +109,7 @@ class BarTheory:
 
     def _last(self, covered: float) -> int:
         """Return the highest mode number worth solving for."""
-        return min(int(covered), self._highest)
+        return min(int(covered + 1e-9), self._highest)
 
     def _once(self, key: str, solve: Callable[[], np.ndarray]) -> np.ndarray:
         if key not in self._known:
@@ -127,11 +134,17 @@ class BarTheory:
         return self._length / max(self._depth_across, self._depth_through)
 
     @cached_property
+    def _bent(self) -> bool:
+        """Whether the centre line leaves a straight line along x."""
+        offset = self._sections.offset
+        return offset is not None and bool(np.ptp(offset) > 1e-6 * self._length)
+
+    @cached_property
     def _form(self) -> str:
-        """What to say of a bar that is not uniform."""
+        """What to say of a bar that is not uniform, its axis taken straight."""
         s = self._sections
-        if s.offset is not None and np.ptp(s.offset) > 1e-6 * self._length:
-            return ", varying section, bent axis"
+        if self._bent:
+            return ", varying section, straight axis"
         uniform = all(
             np.ptp(values) <= 1e-9 * np.max(values)
             for values in (s.area, s.i_across, s.i_through, s.torsion)

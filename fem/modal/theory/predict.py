@@ -13,11 +13,11 @@ from .bars import BarTheory, Prediction, highest_number
 from .disc import disc_frequency
 from .patterns import pattern_of, patterns
 from .plate import plate_frequencies, plate_modes
-from .ring import ring_extensional, ring_in_plane, ring_out_of_plane
+from .ring import ring_extensional, ring_in_plane, ring_out_of_plane, ring_torsional
 from .support import Held
 
 _DISC = re.compile(r"disc \((\d+),(\d+)\)( [ab])?")
-_RING = re.compile(r"ring (\d+) (in-plane|out-of-plane|extensional)( [ab])?")
+_RING = re.compile(r"ring (\d+) (in-plane|out-of-plane|extensional|torsional)( [ab])?")
 
 #: Wave number times thickness up to which Kirchhoff's plate is right to about 3 %.
 _THICK = 0.4
@@ -128,10 +128,12 @@ def _ring(name: str, size: RingSize, material: Material, nu: float) -> Predictio
     modulus, density = material.axial_modulus, material.density
     if family == "extensional":
         return float(ring_extensional(n, size, modulus, density)), "stretching ring (Love 1927)"
+    shear = modulus / (2.0 * (1.0 + nu))
+    if family == "torsional":
+        return float(ring_torsional(n, size, modulus, shear, density)), "twisting ring (Love 1927)"
     if n < 2:
         return None
     if family == "in-plane":
         return float(ring_in_plane(n, size, modulus, density)), "slender ring (Love 1927)"
-    shear = modulus / (2.0 * (1.0 + nu))
     hertz = ring_out_of_plane(n, size, modulus, shear, density)
     return float(hertz), "slender ring out of plane (Love 1927)"

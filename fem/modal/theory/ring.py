@@ -47,6 +47,23 @@ def ring_extensional(n: int, ring: RingSize, modulus: float, density: float) -> 
     return np.sqrt(n**2 + 1.0) * np.sqrt(modulus / density) / (2.0 * np.pi * ring.radius)
 
 
+def ring_torsional(
+    n: int, ring: RingSize, modulus: float, shear_modulus: float, density: float
+) -> float:
+    """Return the frequency of the section turning about the centre line, Hz; n from 0.
+
+    omega^2 = (E I + n^2 G J) / (rho I_p R^2), I about a radial axis, I_p polar;
+    for a round section Love's (1 + nu + n^2) G / (rho R^2).
+
+    References
+    ----------
+    Love A. E. H., Mathematical Theory of Elasticity, 4th ed. 1927, art. 293.
+    """
+    stiffness = modulus * ring.i_radial + n**2 * shear_modulus * ring.torsion
+    polar = ring.i_axial + ring.i_radial
+    return np.sqrt(stiffness / (density * polar)) / (2.0 * np.pi * ring.radius)
+
+
 def _speed(ring: RingSize, inertia: float, modulus: float, density: float) -> float:
     """Return sqrt(E I / (rho A R^4)) / (2 pi), Hz."""
     return np.sqrt(modulus * inertia / (density * ring.area)) / (2.0 * np.pi * ring.radius**2)
