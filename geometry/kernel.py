@@ -12,7 +12,7 @@ from dataclasses import dataclass, replace
 import gmsh
 import numpy as np
 
-from .cad import arrays, bodies, imprint, meshing, naming
+from .cad import arrays, bodies, contours, imprint, meshing, naming
 from .curving import relaxed
 from .errors import InputError, MeshError
 from .ligaments import Spot, thin_places
@@ -26,14 +26,19 @@ from .words import nearest
 #: How well the body must agree with the areas and the volume its records promise.
 _EXACT = 1e-6
 
-#: How well the curved mesh must agree with the body.
+#: How well the curved mesh must agree with the body,
 _CURVED = 1e-3
+#: but faces need not be truer than this share of the whole surface (tiny fillets).
+_TINY = 2e-5
 
 #: Cells whose smallest det J is under this share of their largest are mended.
 _EVEN = 0.05
 
 #: Above this, inner mid-side nodes stay where the CAD library put them.
 _GOOD = 0.5
+
+#: Below this share of bad cells the places are at fault, above it the size on round faces.
+_FEW_BAD = 1e-3
 
 #: Times a body is meshed before its worst cells are straightened.
 _ATTEMPTS = 4
@@ -114,6 +119,9 @@ def _session() -> Iterator[None]:
 def _build(solid: Solid, patches: tuple[Patch, ...]) -> Part:
     try:
         gmsh.model.add("part")
+        for part in bodies.parts(solid.body):
+            for profile in bodies.profiles(part):
+                contours.check(gmsh, profile)
         volume = bodies.build(gmsh, solid.body)
         gmsh.model.add("sources")
         sources = naming.make_sources(gmsh, solid.body)
@@ -124,7 +132,8 @@ def _build(solid: Solid, patches: tuple[Patch, ...]) -> Part:
         raise
     except Exception as error:
         # The kernel raises bare exceptions, for shapes it cannot make.
-        raise InputError(f"the shape cannot be built ({str(error).strip()})") from None
+        reason = str(error).strip() or "the CAD library gives no reason"
+        raise InputError(f"the shape cannot be built ({reason})") from None
     return part
 
 
@@ -226,7 +235,7 @@ def _meshed(part: Part, size: float, most: float) -> arrays.Arrays:
         bad = evenness(found.points, found.cells) <= _EVEN
         if not bad.any() and _faithful(found, part):
             return found
-        if bad.any():
+        if 0 < bad.sum() < _FEW_BAD * len(bad):
             spots = [*spots, *_around(found, bad, size)]
         else:
             per_turn += meshing.PER_TURN // 2
@@ -261,7 +270,8 @@ def _faithful(found: arrays.Arrays, part: Part) -> bool:
         return False
     area = facet_areas(found.points, found.facets)
     got = np.array([area[found.face == tag].sum() for tag in part.areas])
-    return bool(np.all(np.abs(got - list(part.areas.values())) <= _CURVED * got))
+    slack = _CURVED * got + _TINY * part.extent.area
+    return bool(np.all(np.abs(got - list(part.areas.values())) <= slack))
 
 
 def _named(found: arrays.Arrays, part: Part, request: Request, size: float) -> Mesh:

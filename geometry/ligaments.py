@@ -6,10 +6,11 @@ from dataclasses import dataclass
 
 import numpy as np
 
-#: A place is thin where the wall is under this share of the facets' own size,
+#: A place is thin where the wall is under this share of the facets' own size.
 _THIN = 0.4
-#: and under this share of the wall of half the body's surface.
-_LOCAL = 0.5
+
+#: Where more than this share of the surface is thin, the whole body is.
+_LOCAL = 0.2
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -42,10 +43,9 @@ def thin_places(points: np.ndarray, facets: np.ndarray, size: float) -> list[Spo
     side = np.sqrt(twice / 2 * 4 / 3**0.5)
 
     wall = _walls(centre, normal, side)
-    order = np.argsort(wall)
-    half = np.searchsorted(np.cumsum(twice[order]), twice.sum() / 2)
-    typical = wall[order[min(half, len(order) - 1)]]
-    thin = (wall < _THIN * side) & (wall < _LOCAL * typical)
+    thin = wall < _THIN * side
+    if twice[thin].sum() > _LOCAL * twice.sum():
+        return []
     return spots(centre[thin], np.maximum(wall[thin], size / 8), size)
 
 

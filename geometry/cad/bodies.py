@@ -71,6 +71,11 @@ def parts(body: Body) -> Iterator[Part]:
             yield body
 
 
+def profiles(part: Part) -> tuple[Profile, ...]:
+    """Return the profiles of a swept part."""
+    return (part.first, part.last) if isinstance(part, Loft) else (part.profile,)
+
+
 def make(cad: Any, part: Part) -> list[Made]:
     """Make one part in the current model (two halves for a turned one)."""
     match part:
