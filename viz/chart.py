@@ -38,7 +38,7 @@ def sweep_chart(sweep: Sweep, path: Path, *, label: str | None = None) -> None:
         What changes, with its unit; default the key in words.
     """
     x, labels = _abscissa(sweep)
-    what = label or _axis_name(sweep.key)
+    what = label or _axis_name(sweep)
     tracks = sorted(
         (track for track in sweep.tracks if any(f is not None for f in track.frequencies)),
         key=lambda track: _last(track.frequencies),
@@ -92,9 +92,10 @@ def _last(frequencies: tuple[float | None, ...]) -> float:
     return [f for f in frequencies if f is not None][-1]
 
 
-def _axis_name(key: str) -> str:
-    """Return a key path as words: ``shape.slot_length`` becomes ``slot length``."""
-    return key.removeprefix("shape.").replace("_", " ").replace(".", " ")
+def _axis_name(sweep: Sweep) -> str:
+    """Return the key path as words, with its unit: ``slot_length`` becomes ``slot length, mm``."""
+    words = sweep.key.removeprefix("shape.").replace("_", " ").replace(".", " ")
+    return f"{words}, {sweep.unit}" if sweep.unit else words
 
 
 def _style(axes: Axes, x: np.ndarray, labels: list[str]) -> None:

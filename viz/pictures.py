@@ -42,23 +42,22 @@ def draw_pictures(
         job = Path(scratch) / "gallery.npz"
         save_gallery(job, gallery)
         with (Path(scratch) / "errors.txt").open("w+", encoding="utf-8", errors="replace") as log:
-            child = subprocess.Popen(
+            with subprocess.Popen(
                 [sys.executable, "-P", "-m", __name__, str(job), str(folder)],
                 env=rendering_environment(),
                 stdin=subprocess.DEVNULL,
                 stdout=subprocess.PIPE,
                 stderr=log,
                 encoding="utf-8",
-            )
-            try:
-                for line in child.stdout or ():
-                    if progress and line.startswith(_MARK):
-                        progress(line[len(_MARK) :].rstrip())
-                code = child.wait()
-            finally:
-                if child.poll() is None:
+            ) as child:
+                try:
+                    for line in child.stdout or ():
+                        if progress and line.startswith(_MARK):
+                            progress(line[len(_MARK) :].rstrip())
+                except BaseException:
                     child.kill()
-                    child.wait()
+                    raise
+            code = child.returncode
             log.seek(0)
             if code:
                 raise ToolError(f"the pictures could not be drawn: {ending(code, log.read())}")
