@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import os
 import tempfile
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 
 from ..geometry.errors import InputError
@@ -41,18 +43,25 @@ def write_text(path: Path, text: str) -> None:
     InputError
         If it cannot be written.
     """
+    with beside(path) as temporary:
+        temporary.write_text(text, encoding="utf-8", newline="\n")
+
+
+@contextmanager
+def beside(path: Path) -> Iterator[Path]:
+    """Give a path in the same folder (made if need be), and rename it to `path` at the end.
+
+    Raises
+    ------
+    InputError
+        If it cannot be written.
+    """
     try:
         path.parent.mkdir(parents=True, exist_ok=True)
-        handle, name = tempfile.mkstemp(dir=path.parent, prefix=f".{path.name}.")
-        try:
-            with os.fdopen(handle, "w", encoding="utf-8", newline="\n") as file:
-                file.write(text)
-            # mkstemp makes files private; results are as readable as any other file.
-            Path(name).chmod(0o666 & ~_umask())
-            Path(name).replace(path)
-        except BaseException:
-            Path(name).unlink(missing_ok=True)
-            raise
+        with tempfile.TemporaryDirectory(dir=path.parent, prefix=".modewright-") as folder:
+            temporary = Path(folder) / path.name
+            yield temporary
+            temporary.replace(path)
     except OSError as error:
         raise _unwritable(path, error) from None
 
@@ -70,9 +79,3 @@ def _check_writable(folder: Path) -> None:
 def _unwritable(path: Path, error: OSError) -> InputError:
     reason = (error.strerror or str(error)).lower()
     return InputError(f"cannot be written: {reason}", key="--out", value=str(path))
-
-
-def _umask() -> int:
-    mask = os.umask(0)
-    os.umask(mask)
-    return mask

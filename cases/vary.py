@@ -7,6 +7,7 @@ from collections.abc import Mapping
 from typing import Any
 
 from ..fem.modal.case import Case
+from ..geometry.dimension import Sort
 from ..geometry.errors import InputError
 from ..geometry.words import nearest
 
@@ -52,6 +53,20 @@ def varied(document: Mapping[str, Any], case: Case, key: str, value: Any) -> dic
     family = {"family": case.shape.family.name} if "family" in changed["shape"] else {}
     changed["shape"] = {**family, **given}
     return changed
+
+
+def key_unit(case: Case, key: str) -> str | None:
+    """Return the unit of a dimension of the shape; other keys carry theirs in their name."""
+    path = key.removeprefix("shape.").split(".")
+    if key.split(".")[0] in TABLES and "." in key:
+        return None
+    known = {dimension.name: dimension for dimension in case.shape.family.dimensions}
+    found = known.get(path[0])
+    for part in path[1:]:
+        found = next((c for c in found.columns if c.name == part), found) if found else None
+    if found is None or found.sort in (Sort.COUNT, Sort.CHOICE, Sort.FILE, Sort.FLAG):
+        return None
+    return "mm"
 
 
 def _put(table: Any, path: list[str], value: Any, key: str) -> Any:

@@ -53,6 +53,7 @@ PUBLIC = {
         "modes_csv",
         "modes_document",
         "modes_table",
+        "sweep_chart",
         "write_results",
     },
     "modewright.cases": {"Comparison", "build_case", "case_document", "compare", "read_case"},

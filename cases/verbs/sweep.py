@@ -15,10 +15,10 @@ from ...fem.modal.case import Case
 from ...geometry.errors import InputError
 from ...viz.table import Table
 from ..answer import Answer
-from ..outlet import check_folder, write_text
+from ..outlet import beside, check_folder, write_text
 from ..reader import build_case
 from ..source import read_toml
-from ..vary import varied
+from ..vary import key_unit, varied
 from .modes import with_settings
 
 if TYPE_CHECKING:
@@ -60,12 +60,13 @@ def answer_sweep(
     cases = [with_settings(case, **settings) for case in varied_cases]
     from ...fem.study.sweep import sweep
 
-    result = sweep(vary, wanted, cases, progress=progress)
+    unit = key_unit(base, vary)
+    result = sweep(vary, wanted, cases, unit=unit, progress=progress)
     document = sweep_document(result, base)
     lines = () if out is None else (_write(result, document, out),)
     return Answer(
         document=document,
-        heading=f"{base.title}: {vary} from {wanted[0]} to {wanted[-1]}, frequencies in Hz",
+        heading=f"{base.title}: {_title(result)}, frequencies in Hz",
         tables=(sweep_table(result),),
         lines=lines,
     )
@@ -142,6 +143,7 @@ def sweep_document(result: Sweep, base: Case) -> dict[str, Any]:
         "version": 1,
         "case": dict(base.document),
         "vary": result.key,
+        "unit": result.unit,
         "values": list(result.values),
         "modes": [
             {
@@ -180,7 +182,8 @@ def sweep_csv(result: Sweep) -> str:
     """Return a sweep as CSV: one row a value, one column a mode, Hz."""
     buffer = io.StringIO()
     writer = csv.writer(buffer, lineterminator="\n")
-    writer.writerow([result.key, *(f"{track.name} (Hz)" for track in result.tracks)])
+    key = f"{result.key} ({result.unit})" if result.unit else result.key
+    writer.writerow([key, *(f"{track.name} (Hz)" for track in result.tracks)])
     for i, value in enumerate(result.values):
         row = [track.frequencies[i] for track in result.tracks]
         writer.writerow([value, *("" if hz is None else repr(hz) for hz in row)])
@@ -193,7 +196,8 @@ def _write(result: Sweep, document: dict[str, Any], out: Path) -> str:
     text = json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
     write_text(out / "sweep.csv", sweep_csv(result))
     write_text(out / "sweep.json", text)
-    sweep_chart(result, out / "sweep.png")
+    with beside(out / "sweep.png") as temporary:
+        sweep_chart(result, temporary)
     return f"Written to {out}: sweep.csv, sweep.json, sweep.png"
 
 
@@ -227,6 +231,11 @@ def _renamed(result: Sweep, track: Track) -> str:
         if name is not None and before is not None and name != before
     ]
     return f"{track.name!r} is called {', '.join(others)}." if others else ""
+
+
+def _title(result: Sweep) -> str:
+    unit = f" {result.unit}" if result.unit else ""
+    return f"{result.key} from {_text(result.values[0])} to {_text(result.values[-1])}{unit}"
 
 
 def _hertz(hz: float) -> str:

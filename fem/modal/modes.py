@@ -42,7 +42,7 @@ class Mode:
     theory_hz, theory : beam, ring or plate formula, and its name and source
     target_hz, cents_to_target : from the case's targets
     measured_hz, cents_to_measured : from the case's measured rows (model minus measured)
-    nearest_index, nearest_gap_cents : the mode nearest in frequency
+    nearest_index, nearest_gap_cents : the mode nearest in frequency, its own pair left out
     residual : ||K u - lambda M u|| / ||K u||
     """
 

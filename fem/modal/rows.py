@@ -11,6 +11,7 @@ from .case import Case
 from .modes import Mode
 from .naming.find import find_mode
 from .naming.label import Identity
+from .naming.pairs import CENTS
 from .pitch import cents, nearest_note
 from .theory.bars import Prediction
 
@@ -140,6 +141,6 @@ def _off(hz: float, wanted: float | None) -> float | None:
 
 
 def _nearest(i: int, best: Sequence[float]) -> int | None:
-    """Return the position of the neighbour nearest in cents; None for a lone mode."""
-    beside = [j for j in (i - 1, i + 1) if 0 <= j < len(best)]
-    return min(beside, key=lambda j: abs(cents(best[j], best[i])), default=None)
+    """Return the position of the mode nearest in cents, its own pair left out; None if alone."""
+    gaps = {j: abs(cents(other, best[i])) for j, other in enumerate(best) if j != i}
+    return min((j for j in gaps if gaps[j] > CENTS), key=gaps.__getitem__, default=None)

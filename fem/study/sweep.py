@@ -42,11 +42,13 @@ class Sweep:
     key : key path of what was changed
     values : as given, in the order in which the modes were followed
     tracks : by frequency at the first value
+    unit : of the values, where they have one that the key does not tell
     """
 
     key: str
     values: tuple[float | str, ...]
     tracks: tuple[Track, ...]
+    unit: str | None = None
 
     @property
     def frequencies(self) -> np.ndarray:
@@ -61,6 +63,7 @@ def sweep(
     values: Sequence[float | str],
     cases: Sequence[Case],
     *,
+    unit: str | None = None,
     progress: Callable[[str], None] | None = None,
 ) -> Sweep:
     """Solve a case for each value and follow the modes by shape.
@@ -73,6 +76,8 @@ def sweep(
         One for each case.
     cases : sequence of Case
         In an order in which neighbours differ little.
+    unit : str, optional
+        Of the values, for the record.
     progress : callable, optional
         Called with a few words at each stage.
 
@@ -97,6 +102,7 @@ def sweep(
     return Sweep(
         key=key,
         values=tuple(values),
+        unit=unit,
         tracks=tuple(
             Track(
                 name=next(name for name in track.names if name is not None),
