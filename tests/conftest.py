@@ -1,10 +1,11 @@
 """Fixtures that several test modules share."""
 
 import itertools
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 
 import numpy as np
 import pytest
+from modewright.fem.modal.threads import threads
 from modewright.geometry.mesh import EDGES, Mesh
 
 #: Local corners of the four sides of a tetrahedron, outward.
@@ -67,6 +68,13 @@ def boundary(cells: np.ndarray) -> np.ndarray:
         np.sort(facets[:, :3], axis=1), axis=0, return_index=True, return_counts=True
     )
     return facets[np.sort(first[count == 1])]
+
+
+@pytest.fixture(scope="session", autouse=True)
+def _one_pool_of_threads() -> Iterator[None]:
+    """Keep numpy's threads from fighting with those of the direct solver."""
+    with threads():
+        yield
 
 
 @pytest.fixture

@@ -158,14 +158,14 @@ def test_running_out_of_memory_is_told(monkeypatch):
     from modewright.fem.modal.direct import mkl, superlu
 
     monkeypatch.setattr(mkl, "_run", lambda *a: -2)
-    with pytest.raises(SolveError, match="memory.*coarser"):
+    with pytest.raises(SolveError, match=r"memory.*coarser"):
         factorise(upper(laplacian(3)), library="mkl")
 
     def full(*a, **k):
         raise MemoryError
 
     monkeypatch.setattr(superlu, "splu", full)
-    with pytest.raises(SolveError, match="memory.*coarser"):
+    with pytest.raises(SolveError, match=r"memory.*coarser"):
         factorise(upper(laplacian(3)), library="superlu")
 
 

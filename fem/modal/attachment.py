@@ -13,6 +13,9 @@ from .surface import facet_geometry
 #: How far a point may lie off the surface, m.
 _OFF = 1e-4
 
+#: Cosine of the angle (84 degrees) up to which surfaces face the same way.
+_SAME_WAY = 0.1
+
 #: Facets looked at closely for the nearest point.
 _CANDIDATES = 24
 
@@ -57,7 +60,7 @@ def patch_mass(mesh: Mesh, item: AttachedMass) -> tuple[np.ndarray, np.ndarray]:
     steps = int(np.clip(np.ceil(16 * reach[near].max() / radius), 16, 128))
     geometry = facet_geometry(mesh.points[facets], *_fine_rule(steps))
     inside = np.linalg.norm(geometry.points - nearest, axis=-1) <= radius
-    inside &= geometry.normals @ normal > 0.0
+    inside &= geometry.normals @ normal > _SAME_WAY
     areas = geometry.areas * inside
     matrices = np.einsum("fq,qa,qb->fab", areas, geometry.values, geometry.values, optimize=True)
     return facets, matrices * (item.mass / areas.sum())
@@ -70,8 +73,9 @@ def local_thickness(mesh: Mesh, point: np.ndarray, normal: np.ndarray) -> float:
     ray = -normal
     cross = np.cross(ray, e2)
     det = np.einsum("fi,fi->f", e1, cross)
-    # Facets along the ray are no far side.
-    steep = np.abs(det) > 1e-9 * np.linalg.norm(e1, axis=1) * np.linalg.norm(e2, axis=1)
+    # The ray leaves the body where it runs with the outward normal e1 x e2; flat
+    # stand-ins of curved facets near its start face the other way.
+    steep = -det > 1e-9 * np.linalg.norm(e1, axis=1) * np.linalg.norm(e2, axis=1)
     det = np.where(steep, det, 1.0)
     to = point - a
     u = np.einsum("fi,fi->f", to, cross) / det
