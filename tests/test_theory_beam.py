@@ -156,6 +156,23 @@ def test_orthotropic_bar_against_three_dimensions():
     assert (flat[0], edge[0]) == pytest.approx((980.81, 1991.80), rel=3e-3)
 
 
+def test_lateral_inertia_of_an_orthotropic_rod():
+    # Exact for a uniform free rod: f = n c / 2 L / sqrt(1 + (n pi / L)^2 (nu_xy^2 I_z +
+    # nu_xz^2 I_y) / A); nu_xy thins it across, its width, nu_xz through its thickness.
+    wood = Material(
+        name="wood",
+        youngs_modulus=(12e9, 1e9, 1e9),
+        shear_modulus=(0.8e9, 0.8e9, 0.1e9),
+        poisson_ratio=(0.45, 0.2, 0.3),
+        density=450.0,
+    )
+    n = np.array([1, 2])
+    lateral = (0.45**2 * 0.05**2 + 0.2**2 * 0.01**2) / 12
+    exact = n * np.sqrt(12e9 / 450.0) / 0.6 / np.sqrt(1 + (n * np.pi / 0.3) ** 2 * lateral)
+    found = axial_frequencies(of_rectangle([0.0, 0.3], 0.05, 0.01), wood, "free", 2)
+    assert found == pytest.approx(exact, rel=1e-7)
+
+
 def _taper(tip, which):
     """Return a slender cantilever tapering to `tip` times the root's size."""
     x = np.linspace(0.0, 1.0, 257)
