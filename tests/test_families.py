@@ -113,7 +113,7 @@ def test_the_surface_is_the_slope_of_the_volume(family):
         "bar": {"length": 60 + 2 * h, "width": 8 + 2 * h, "thickness": 1.2 + 2 * h},
         "plate": {"diameter": 120 + 2 * h, "thickness": 2 + 2 * h},
         "ring": {"width": 5 + 2 * h, "thickness": 4 + 2 * h},
-        "tube": {"length": 420 + 2 * h, "outer_diameter": 25 + 2 * h, "wall": 1.5 + 2 * h},
+        "tube": {"length": 300 + 2 * h, "outer_diameter": 25 + 2 * h, "wall": 2 + 2 * h},
         "stepped_bar": {
             # The outer segments gain h at their free ends; a thicker one also at a step.
             "segments": [

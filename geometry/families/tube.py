@@ -131,5 +131,5 @@ FAMILY = Family(
     check=_check,
     solid=_solid,
     anatomy=_anatomy,
-    example={"length": 420.0, "outer_diameter": 25.0, "wall": 1.5},
+    example={"length": 300.0, "outer_diameter": 25.0, "wall": 2.0},
 )
