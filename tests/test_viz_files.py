@@ -253,7 +253,7 @@ def test_table_leaves_out_empty_columns(modes):
     column = table.headers.index("cents to target")
     assert [row[column] for row in table.rows] == ["+8.9", "", ""]
     assert table.rows[0][table.headers.index("cents")] == "+0.0"
-    assert table.rows[2][1] == "~ torsion 1"
+    assert table.rows[2][1] == "torsion 1 (mixed)"
     assert any("clamp" in note for note in table.notes)
     assert next(csv.reader(io.StringIO(table_csv(table)))) == list(table.headers)
 

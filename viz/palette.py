@@ -13,7 +13,7 @@ ACCENT = "#e2571e"
 STEEL = "#8fa3b8"
 
 #: Light to dark in one hue, even steps in lightness: still to moving most.
-_RAMP = ("#e6eef7", "#bcd3ea", "#8ab2da", "#5289c0", "#23609f", "#0b3a70", "#041f45")
+_RAMP = ("#e6eef7", "#bcd3ea", "#8ab2da", "#5289c0", "#23609f", "#0e417c", "#06295a")
 
 #: For lines that must be told apart; each also carries its name.
 LINES = ("#23609f", "#e2571e", "#3c8d5a", "#8a5aa8", "#b08412", "#17212b", "#2b8ca3", "#b23a5c")

@@ -8,7 +8,7 @@ from pathlib import Path
 
 from .gallery import Caption, Gallery
 from .palette import ACCENT, GREY, HAIR, REST
-from .raster import FINER, Canvas, text_width, wrapped
+from .raster import FINER, Canvas, shortened, text_width, wrapped
 from .scene import Scene
 
 _WIDTH = 1920
@@ -61,7 +61,7 @@ def draw_sheet(
             scene.set_mode(motion)
             canvas.paste(scene.picture(1.0), x, picture, width, height)
             canvas.line([(x, top), (x + width, top)], colour=HAIR, width=1.5)
-            _label(canvas, caption, names[k], x, top + label + 8)
+            _label(canvas, caption, names[k], x, top + label + 8, width)
         _foot(canvas, gallery, scene.pixels_per_metre / FINER, y + 54)
     canvas.save_png(path)
 
@@ -80,15 +80,20 @@ def _indent() -> float:
     return text_width("00", _NAME) + 18
 
 
-def _label(canvas: Canvas, caption: Caption, name: list[str], x: int, y: float) -> None:
+def _label(
+    canvas: Canvas, caption: Caption, name: list[str], x: int, y: float, width: float
+) -> None:
     canvas.text(x, y, str(caption.number), _NAME, colour=GREY)
     left = x + _indent()
     for line in name:
         canvas.text(left, y, line, _NAME, bold=True)
         y += 30
     y += 2
-    end = canvas.text(left, y, caption.pitch, _PITCH)
-    canvas.text(left + end + 22, y, caption.detail, _SMALL, colour=GREY)
+    start = left + canvas.text(left, y, caption.pitch, _PITCH) + 22
+    detail, room = caption.detail, x + width - start
+    if text_width(detail, _SMALL) > room:
+        detail = detail.replace(" cents", " ct")
+    canvas.text(start, y, shortened(detail, _SMALL, room), _SMALL, colour=GREY)
 
 
 def _foot(canvas: Canvas, gallery: Gallery, pixels_per_metre: float, y: float) -> None:

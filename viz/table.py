@@ -15,7 +15,7 @@ from .document import mode_document
 _SHARE_WORTH_A_COLUMN = 0.05
 
 _PAIR_NOTE = "pair: the two frequencies are equal here; the real split comes from the part"
-_MIXED_NOTE = "~ before a mode: mixed, no kind of motion has half of its kinetic energy"
+_MIXED_NOTE = "mixed: no one kind of motion has half of the kinetic energy"
 _TRUST_NOTE = (
     "Not in these numbers: what the real part and its mount add. In bending, 1 % of thickness "
     "is 17 cents, 1 % of length 34, 1 % of modulus 9; a clamp that gives flattens all of them."
@@ -159,8 +159,8 @@ def _columns(modes: Modes) -> Iterable[_Column]:
 
 
 def _name(mode: Mode) -> str:
-    name = f"~ {mode.name}" if mode.mixed else mode.name
-    return f"{name} (pair)" if mode.pair else name
+    marks = [mark for mark, holds in (("pair", mode.pair), ("mixed", mode.mixed)) if holds]
+    return f"{mode.name} ({', '.join(marks)})" if marks else mode.name
 
 
 def _share(mode: Mode, kind: str) -> str:
