@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
+import os
 import sys
 from collections.abc import Callable, Sequence
 from importlib.metadata import version
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated
 
-from cyclopts import App, CycloptsError, Parameter
+from cyclopts import App, CycloptsError, Parameter, Token
 
 from ..geometry.errors import InputError, ModewrightError, WorkError
 
@@ -22,8 +23,19 @@ app = App(
     help_format="plaintext",
     version_flags=["--version"],
     help_flags=["--help", "-h"],
+    suppress_keyboard_interrupt=False,
 )
 
+
+def _whole(_hint: object, tokens: Sequence[Token]) -> int:
+    """Return a whole number; the parser alone would cut the decimals off."""
+    try:
+        return int(tokens[0].value)
+    except ValueError:
+        raise ValueError(f"must be a whole number, got {tokens[0].value!r}") from None
+
+
+Count = Annotated[int | None, Parameter(help="How many elastic modes.", converter=_whole)]
 Json = Annotated[
     bool, Parameter(name="--json", negative="", help="Print the result as one JSON object.")
 ]
@@ -85,7 +97,7 @@ def modes(
     *,
     out: Annotated[Path | None, Parameter(help="Write all results into this folder.")] = None,
     size: Annotated[float | None, Parameter(help="Size of the mesh's cells, mm.")] = None,
-    modes: Annotated[int | None, Parameter(help="How many elastic modes.")] = None,
+    modes: Count = None,
     up_to_hz: Annotated[float | None, Parameter(help="All modes up to this, Hz.")] = None,
     pictures: Annotated[bool, Parameter(help="Draw the sheet and the animations.")] = True,
     json: Json = False,
@@ -137,7 +149,7 @@ def sweep(
     values: Annotated[str, Parameter(help="Two or more values: 1,2,3.", allow_leading_hyphen=True)],
     out: Annotated[Path | None, Parameter(help="Write the results into this folder.")] = None,
     size: Annotated[float | None, Parameter(help="Size of the mesh's cells, mm.")] = None,
-    modes: Annotated[int | None, Parameter(help="How many elastic modes.")] = None,
+    modes: Count = None,
     up_to_hz: Annotated[float | None, Parameter(help="All modes up to this, Hz.")] = None,
     json: Json = False,
 ) -> int:
@@ -185,8 +197,9 @@ def main(tokens: Sequence[str] | None = None) -> int:
     except MemoryError:
         return _complain(WorkError("not enough memory: try a larger size, or fewer modes"), as_json)
     except BrokenPipeError:
-        # The reader of our output (head, less) has gone; nothing is wrong.
-        sys.stdout = None  # type: ignore[assignment]
+        # The reader of our output (head, less) has gone; nothing is wrong. What is left
+        # in the buffer must not fail again when the interpreter flushes it at the end.
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         return 0
     return code if isinstance(code, int) else 0
 

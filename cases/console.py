@@ -28,9 +28,9 @@ _GAP = 2
 
 def give(answer: Answer, *, as_json: bool) -> None:
     """Print an answer: one JSON object, or tables and lines for people."""
-    warn(answer.warnings)
     if as_json:
         _print_json(answer.document)
+        warn(answer.warnings)
         return
     console = _stdout()
     if answer.text:
@@ -42,6 +42,7 @@ def give(answer: Answer, *, as_json: bool) -> None:
     for line in answer.lines:
         console.print(Text(line), soft_wrap=not console.is_terminal)
     sys.stdout.flush()
+    warn(answer.warnings)
 
 
 def complain(error: ModewrightError, *, as_json: bool) -> None:

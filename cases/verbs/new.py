@@ -8,7 +8,7 @@ from collections.abc import Mapping
 from pathlib import Path
 from typing import Any
 
-from ...geometry.dimension import Dimension
+from ...geometry.dimension import Dimension, Sort
 from ...geometry.errors import InputError
 from ...geometry.shape import Family
 from ..answer import Answer
@@ -37,13 +37,28 @@ def answer_new(family: str, out: Path | None) -> Answer:
         "text": text,
         "file": None if out is None else str(out),
     }
+    warnings = tuple(
+        f"the case needs a file beside it: put yours in place of {name!r}"
+        for name in _files(find_family(family))
+    )
     if out is None:
-        return Answer(document=document, text=text)
+        return Answer(document=document, text=text, warnings=warnings)
     check_file(out)
     if out.exists():
         raise InputError("is there already and is left as it is", key="--out", value=str(out))
     write_text(out, text)
-    return Answer(document=document, lines=(f"Written: {out}. Run: modewright modes {out}",))
+    return Answer(
+        document=document,
+        lines=(f"Written: {out}. Run: modewright modes {out}",),
+        warnings=warnings,
+    )
+
+
+def _files(family: Family) -> list[str]:
+    """Return the file names of a family's example: imported bodies need one."""
+    sorts = (Sort.FILE, Sort.FILE_OR_POINTS)
+    names = [d.name for d in family.dimensions if d.sort in sorts]
+    return [v for k, v in family.example.items() if k in names and isinstance(v, str)]
 
 
 def new_case(family: Family) -> str:
