@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from dataclasses import replace
 from itertools import pairwise
 
 import numpy as np
@@ -46,19 +47,16 @@ def smooth_pieces(
     if len(w) != len(poles) or np.any(w <= 0) or not np.all(np.isfinite(poles)):
         raise InputError("holds a spline with weights or poles that make no curve")
     curve = interpolate.BSpline(t, np.column_stack((poles * w[:, None], w)), degree)
-    cuts = _cuts(curve)
-    for u in cuts:
-        missing = degree - int(np.count_nonzero(curve.t == u))
-        if missing > 0:
-            curve = curve.insert_knot(u, missing)
-    pieces = []
-    for low, high in pairwise(cuts):
-        first = int(np.searchsorted(curve.t, low, side="right")) - 1
-        last = int(np.searchsorted(curve.t, high, side="left"))
-        pieces.append(
-            _record(curve.c[first - degree : last], degree, low, curve.t[first + 1 : last], high)
-        )
-    return pieces
+    return _pieces(curve, _cuts(curve))
+
+
+def bezier_pieces(curve: BSpline) -> list[BSpline]:
+    """Return a spline as its polynomial (or rational) spans, one each; exact."""
+    w = np.asarray(curve.weights or (1.0,) * len(curve.poles))
+    poles = np.column_stack((np.asarray(curve.poles) * w[:, None], w))
+    whole = interpolate.BSpline(np.asarray(curve.knots, float), poles, curve.degree)
+    cuts = np.unique(whole.t[curve.degree : -curve.degree])
+    return [replace(piece, face=curve.face) for piece in _pieces(whole, cuts.tolist())]
 
 
 def bezier(points: np.ndarray) -> BSpline:
@@ -83,6 +81,23 @@ def _cuts(curve: interpolate.BSpline) -> list[float]:
         middle = float(inner[len(inner) // 2]) if len(inner) else (low + high) / 2
         cuts.insert(1, middle)
     return cuts
+
+
+def _pieces(curve: interpolate.BSpline, cuts: Sequence[float]) -> list[BSpline]:
+    """Return the parts of a curve between cuts, the ends of its domain among them."""
+    degree = curve.k
+    for u in cuts:
+        missing = degree - int(np.count_nonzero(curve.t == u))
+        if missing > 0:
+            curve = curve.insert_knot(u, missing)
+    pieces = []
+    for low, high in pairwise(cuts):
+        first = int(np.searchsorted(curve.t, low, side="right")) - 1
+        last = int(np.searchsorted(curve.t, high, side="left"))
+        pieces.append(
+            _record(curve.c[first - degree : last], degree, low, curve.t[first + 1 : last], high)
+        )
+    return pieces
 
 
 def _record(

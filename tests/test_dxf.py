@@ -125,6 +125,17 @@ def test_mirrored_arcs_and_ellipses(tmp_path: Path) -> None:
     np.testing.assert_allclose(box(segments), [[10, -5], [15, 5]], atol=1e-9)
 
 
+def test_arc_through_the_angle_zero(tmp_path: Path) -> None:
+    def draw(space, _) -> None:
+        space.add_arc((0, 0), 5, 315, 45)
+
+    np.testing.assert_allclose(
+        box(read_dxf(drawing(tmp_path / "a.dxf", draw))),
+        [[5 / 2**0.5, -5 / 2**0.5], [5, 5 / 2**0.5]],
+        atol=1e-9,
+    )
+
+
 def test_hidden_layers_and_annotation_are_passed_over(tmp_path: Path) -> None:
     def draw(space, document) -> None:
         document.layers.add("GHOST").freeze()
@@ -149,6 +160,10 @@ def test_leaf_example_is_one_part() -> None:
     outline = outline_of_segments(read_dxf(leaf))
     assert len(outline.outer) == 4
     assert len(outline.holes) == 1
+    values = {"outline": str(leaf), "thickness": 5.0}
+    mesh = generate(make_shape(FAMILIES["outline"], values), size_mm=15.0)
+    # The kernel itself refuses a body whose volume is not the drawing's to 1e-6.
+    assert mesh.volume == pytest.approx(outline.area * 5e-9, rel=1e-9)
 
 
 def flat_error(tmp_path: Path, draw) -> InputError:

@@ -9,7 +9,7 @@ from ..dimension import Dimension, Sort
 from ..errors import InputError
 from ..outline import Outline, outline_of_points, outline_of_segments
 from ..shape import Dimensions, Family
-from ..solid import Extrusion, Solid
+from ..solid import BSpline, Extrusion, Solid
 from ..source import source_file
 from ..unit import UNITS
 
@@ -51,13 +51,19 @@ def _check(d: Dimensions) -> None:
 
 def _solid(d: Dimensions, folder: Path) -> Solid:
     outline, t = _outline(d, folder), d["thickness"]
+    # The kernel's integrals along weighted splines are not sharp enough to be held to.
+    plain = not any(
+        isinstance(s, BSpline) and s.weights
+        for loop in (outline.outer, *outline.holes)
+        for s in loop
+    )
     return Solid(
         body=Extrusion(
             profile=outline.profile(-t / 2), vector=(0.0, 0.0, t), start="bottom", end="top"
         ),
         faces=("top", "bottom", *outline.edges),
-        areas={"top": outline.area, "bottom": outline.area},
-        volume=outline.area * t,
+        areas={"top": outline.area, "bottom": outline.area} if plain else {},
+        volume=outline.area * t if plain else None,
         thin=min(t, outline.thin),
     )
 
