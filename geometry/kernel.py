@@ -29,7 +29,7 @@ _EXACT = 1e-6
 #: How well the curved mesh must agree with the body,
 _CURVED = 1e-3
 #: but faces need not be truer than this share of the whole surface (tiny fillets).
-_TINY = 2e-5
+_TINY = 1e-4
 
 #: Cells whose smallest det J is under this share of their largest are mended.
 _EVEN = 0.05
@@ -37,10 +37,11 @@ _EVEN = 0.05
 #: Above this, inner mid-side nodes stay where the CAD library put them.
 _GOOD = 0.5
 
-#: Below this share of bad cells the places are at fault, above it the size on round faces.
+#: So few bad cells are straightened at once where that leaves the surface true; if
+#: it does not, the places are at fault. More, and the size on round faces is.
 _FEW_BAD = 1e-3
 
-#: Times a body is meshed before its worst cells are straightened.
+#: Times a body is meshed; at the last, whatever cells are bad are straightened.
 _ATTEMPTS = 4
 
 #: More unknowns than any machine this is meant for would solve.
@@ -221,7 +222,6 @@ def _meshed(part: Part, size: float, most: float) -> arrays.Arrays:
     """
     spots: list[Spot] = []
     per_turn = meshing.PER_TURN
-    found = None
     for attempt in range(_ATTEMPTS):
         meshing.generate(gmsh, size, per_turn=per_turn, spots=spots)
         found = _curved(arrays.read(gmsh, part.volume, sorted(part.names)))
@@ -233,17 +233,15 @@ def _meshed(part: Part, size: float, most: float) -> arrays.Arrays:
             if spots:
                 continue
         bad = evenness(found.points, found.cells) <= _EVEN
-        if not bad.any() and _faithful(found, part):
+        last = attempt == _ATTEMPTS - 1
+        if bad.any() and (last or bad.sum() < _FEW_BAD * len(bad)):
+            found = replace(found, points=straighten(found.points, found.cells, bad))
+        if evenness(found.points, found.cells).min() > _EVEN and _faithful(found, part):
             return found
         if 0 < bad.sum() < _FEW_BAD * len(bad):
             spots = [*spots, *_around(found, bad, size)]
         else:
             per_turn += meshing.PER_TURN // 2
-    if found is not None:
-        bad = evenness(found.points, found.cells) <= _EVEN
-        found = replace(found, points=straighten(found.points, found.cells, bad))
-        if evenness(found.points, found.cells).min() > _EVEN and _faithful(found, part):
-            return found
     raise MeshError(f"no valid mesh was found at {size:g} mm; try a smaller element size")
 
 

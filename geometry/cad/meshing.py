@@ -18,7 +18,7 @@ FEW_PER_TURN = 8
 _SHORT = 0.7
 
 #: The smallest local size, as a share of the element size asked for.
-_SMALLEST = 1 / 12
+_SMALLEST = 1 / 30
 
 _OPTIONS = {
     "General.NumThreads": 1,
