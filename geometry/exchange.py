@@ -219,9 +219,8 @@ def _beside(path: Path) -> Iterator[Path]:
 def _silence() -> Iterator[None]:
     """Keep meshio's own prints off the terminal: errors are raised, not printed."""
     with (
-        warnings.catch_warnings(),
+        warnings.catch_warnings(action="ignore"),
         contextlib.redirect_stdout(io.StringIO()),
         contextlib.redirect_stderr(io.StringIO()),
     ):
-        warnings.simplefilter("ignore")
         yield
