@@ -405,17 +405,18 @@ def test_small_radius_is_fine_and_the_rest_coarse():
 
 
 def test_thin_wall_round_a_coarse_bend_is_never_inverted():
-    # One cell spans 30 degrees of a wall a twelfth of the radius thick.
+    # One cell spans 20 degrees of a wall a twelfth of the radius thick: without inner
+    # edges that follow the bend, the worst cells are near zero.
     ring = Extrusion(
         profile=Profile(
             outer=(Circle(centre=(0, 0), radius=12.5, face="outer"),),
             holes=((Circle(centre=(0, 0), radius=11.5, face="inner"),),),
         ),
-        vector=(0, 0, 20),
+        vector=(0, 0, 60),
     )
-    mesh = made(ring, size=9, volume=math.pi * 24 * 20)
+    mesh = made(ring, size=4.28, volume=math.pi * 24 * 60)
     assert_sound(mesh)
-    assert evenness(mesh.points, mesh.cells).min() > 0.1
+    assert evenness(mesh.points, mesh.cells).min() > 0.3
 
 
 def test_ligament_is_found_and_refined():
