@@ -4,6 +4,7 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
+import scipy.sparse as sp
 from modewright.fem.modal.assembly import assemble
 from modewright.fem.modal.case import Case
 from modewright.fem.modal.constraint import (
@@ -11,6 +12,7 @@ from modewright.fem.modal.constraint import (
     hold_normals,
     make_constraint,
 )
+from modewright.fem.modal.direct.triangle import entries
 from modewright.fem.modal.material import Material
 from modewright.fem.modal.mount import Hold, Mount
 from modewright.fem.modal.reduction import reduce_blocks, scalar_blocks
@@ -64,35 +66,46 @@ def test_reduction_is_the_product_with_the_transformation(brick):
     )
     matrices = assemble(mesh, MAPLE.stiffness(), 700.0)
     t = constraint.transformation
-    np.testing.assert_allclose((t.T @ t).toarray(), np.eye(constraint.unknowns), atol=1e-14)
+    columns = (t.T @ t).toarray()
+    np.testing.assert_allclose(
+        columns, np.diag(constraint.free[constraint.moving].ravel()), atol=1e-14
+    )
+    pins = 7.0 * (np.eye(len(columns)) - columns)
     for blocks, whole in (
         (matrices.blocks, matrices.stiffness),
-        (scalar_blocks(matrices.masses), np.kron(matrices.mass.toarray(), np.eye(3))),
+        (scalar_blocks(matrices.masses), sp.kron(matrices.mass, sp.eye(3)).tocsr()),
     ):
-        upper = reduce_blocks(matrices.pattern, blocks, constraint)
-        wanted = t.T @ (whole @ t)
-        wanted = np.triu(wanted if isinstance(wanted, np.ndarray) else wanted.toarray())
-        assert np.abs(upper.toarray() - wanted).max() < 1e-13 * np.abs(wanted).max()
-        assert upper.has_sorted_indices
+        upper = reduce_blocks(matrices.pattern, blocks, constraint, pin=7.0)
+        wanted = np.triu((t.T @ whole @ t).toarray() + pins)
+        got = entries(upper)
+        assert np.abs(got.toarray() - wanted).max() < 1e-13 * np.abs(wanted).max()
+        # By blocks, the diagonal first in its row and whole.
+        assert (upper.indices[upper.indptr[:-1]] == np.arange(len(constraint.moving))).all()
         assert (np.diff(upper.indptr) > 0).all()
-    y = np.random.default_rng(0).standard_normal((constraint.unknowns, 3))
+        own = upper.data[upper.indptr[:-1]]
+        np.testing.assert_allclose(own, own.transpose(0, 2, 1), atol=1e-13 * np.abs(own).max())
+    y = np.random.default_rng(0).standard_normal((t.shape[1], 3))
+    free = constraint.free[constraint.moving].reshape(-1, 1)
     np.testing.assert_allclose(constraint.to_vectors(y), t @ y, atol=1e-14)
-    np.testing.assert_allclose(constraint.to_unknowns(t @ y), y, atol=1e-14)
+    np.testing.assert_allclose(constraint.to_unknowns(t @ y), y * free, atol=1e-14)
     assert np.abs(constraint.violation(t @ y)).max() < 1e-14
     v = np.random.default_rng(1).standard_normal((3 * len(mesh.points), 2))
     np.testing.assert_allclose(constraint.to_unknowns(v), t.T @ v, atol=1e-14)
+    allowed = np.matmul(constraint.projectors(), v.reshape(-1, 3, 2)).reshape(v.shape)
+    np.testing.assert_allclose(allowed, t @ (t.T @ v), atol=1e-14)
 
 
 def test_two_matrices_of_one_pattern_line_up(brick):
     mesh = brick((1.0, 0.8, 0.6), (2, 1, 1))
-    system = build_system(case(mount(Hold.CLAMPED, "x_min")), mesh)
+    mounts = (mount(Hold.CLAMPED, "x_min"), mount(Hold.HELD, "z_max", axes=("y",)))
+    system = build_system(case(*mounts), mesh)
     shifted = system.shifted(-3.0)
     np.testing.assert_array_equal(shifted.indices, system.stiffness.indices)
     np.testing.assert_array_equal(shifted.indptr, system.stiffness.indptr)
     t = system.constraint.transformation
-    mass = np.kron(system.mass.toarray(), np.eye(3))
-    wanted = np.triu(system.stiffness.toarray() + 3.0 * (t.T @ mass @ t))
-    assert np.abs(shifted.toarray() - wanted).max() < 1e-13 * np.abs(wanted).max()
+    mass = t.T @ sp.kron(system.mass, sp.eye(3)) @ t
+    wanted = np.triu(system.stiffness.toarray()) + 3.0 * np.triu(mass.toarray())
+    assert np.abs(np.triu(shifted.toarray()) - wanted).max() < 1e-13 * np.abs(wanted).max()
 
 
 def test_clamped_nodes_stand_still_and_held_ones_keep_their_axes(brick):

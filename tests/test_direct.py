@@ -80,6 +80,29 @@ def test_negative_pivots_count_the_eigenvalues_below(count):
     np.testing.assert_allclose(f.solve(shifted @ x), x, atol=1e-8)
 
 
+def blocks(matrix: sp.csr_matrix) -> sp.bsr_matrix:
+    """Return the upper triangle of a symmetric matrix by 3 x 3 blocks."""
+    whole = sp.bsr_matrix(matrix, blocksize=(3, 3))
+    whole.sort_indices()
+    rows = np.repeat(np.arange(len(whole.indptr) - 1), np.diff(whole.indptr))
+    keep = whole.indices >= rows
+    indptr = np.concatenate([[0], np.cumsum(np.bincount(rows[keep]))])
+    return sp.bsr_matrix((whole.data[keep], whole.indices[keep], indptr), shape=matrix.shape)
+
+
+@ALL
+@pytest.mark.parametrize("positive", [True, False])
+def test_takes_matrices_by_blocks(library, positive):
+    a = laplacian(12) - (0.0 if positive else 1.0) * sp.eye_array(144)
+    f = factorise(blocks(a), positive=positive, library=library)
+    x = np.random.default_rng(0).standard_normal((144, 4))
+    np.testing.assert_allclose(f.solve(a @ x), x, atol=1e-9)
+    if not positive and library == "mkl":
+        assert f.negative_pivots == (laplacian_values(12) < 1.0).sum()
+    f.numeric(3.0 * blocks(a).data)
+    np.testing.assert_allclose(f.solve(a @ x), x / 3.0, atol=1e-9)
+
+
 @pytest.mark.parametrize("library", ["cholmod", "superlu"])
 def test_libraries_without_inertia_say_nothing(library):
     a = laplacian(7) - 0.5 * sp.eye_array(49)

@@ -145,7 +145,9 @@ def test_a_slender_limb_on_a_stout_body(brick):
     # About a clamped square bar 120 x 9 x 9 mm, both ways; the body it stands on is
     # free to swing against it, which raises the pitch.
     beam = 1.8751**2 / (2 * np.pi) * np.sqrt(200e9 * 0.009**2 / 12 / 8000) / 0.12**2
-    np.testing.assert_allclose(spectrum.frequencies[:2], 1.05 * beam, rtol=0.05)
+    assert (spectrum.frequencies[:2] > beam).all()
+    assert (spectrum.frequencies[:2] < 1.4 * beam).all()
+    assert spectrum.frequencies[2] > 2.0 * spectrum.frequencies[1]
 
 
 def test_the_same_digits_on_every_run(brick):

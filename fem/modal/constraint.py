@@ -54,11 +54,14 @@ class Constraint:
         return int(self.free.sum())
 
     @property
-    def numbers(self) -> np.ndarray:
-        """Number of each free local component, (n, 3) int; -1 where held."""
-        numbers = np.full(self.free.shape, -1, np.int64)
-        numbers[self.free] = np.arange(self.unknowns)
-        return numbers
+    def moving(self) -> np.ndarray:
+        """Nodes that can move in some direction, (m,) int ascending."""
+        return np.flatnonzero(self.free.any(axis=1))
+
+    @property
+    def partly(self) -> np.ndarray:
+        """Nodes that can move in some directions only, (k,) int ascending."""
+        return np.flatnonzero(self.free.any(axis=1) & ~self.free.all(axis=1))
 
     def local(self, vectors: np.ndarray) -> np.ndarray:
         """Return components (n, 3, k) along the local directions of vectors (n, 3, k)."""
@@ -69,36 +72,50 @@ class Constraint:
         return out
 
     def to_unknowns(self, vectors: np.ndarray) -> np.ndarray:
-        """Return T^T v (free, k) of vectors (3n, k)."""
-        return self.local(vectors.reshape(len(self.free), 3, -1))[self.free]
+        """Return T^T v (3m, k) of vectors (3n, k)."""
+        out = self.local(vectors.reshape(len(self.free), 3, -1))
+        out = out if len(self.moving) == len(out) else out[self.moving]
+        return self._without_held(out).reshape(-1, out.shape[-1])
 
     def to_vectors(self, unknowns: np.ndarray) -> np.ndarray:
-        """Return T y (3n, k) of unknowns (free, k)."""
-        out = np.zeros((*self.free.shape, unknowns.shape[1]))
-        out[self.free] = unknowns
+        """Return T y (3n, k) of unknowns (3m, k)."""
+        out = np.zeros((len(self.free), 3, unknowns.shape[1]))
+        out[self.moving] = self._without_held(unknowns.reshape(-1, 3, unknowns.shape[1]))
         if len(self.turned):
             out[self.turned] = np.matmul(self.directions, out[self.turned])
         return out.reshape(-1, unknowns.shape[1])
 
+    def _without_held(self, local: np.ndarray) -> np.ndarray:
+        """Return local components (m, 3, k) of the moving nodes, zero where held."""
+        partly = self.partly
+        if len(partly) == 0:
+            return local
+        at = np.searchsorted(self.moving, partly)
+        out = local.copy()
+        out[at] *= self.free[partly, :, None]
+        return out
+
     @property
     def transformation(self) -> sp.csr_matrix:
-        """T (3n, free): displacements at nodes from the unknowns; columns orthonormal."""
-        n = len(self.free)
-        turned = np.zeros(n, bool)
-        turned[self.turned] = True
-        plain = np.flatnonzero(~turned)
-        rows = [(3 * plain[:, None] + np.arange(3)).ravel()]
-        columns, values = [rows[0]], [np.ones(len(rows[0]))]
-        if len(self.turned):
-            i, j = np.meshgrid(np.arange(3), np.arange(3), indexing="ij")
-            rows.append((3 * self.turned[:, None, None] + i).ravel())
-            columns.append((3 * self.turned[:, None, None] + j).ravel())
-            values.append(self.directions.ravel())
-        whole = sp.csc_matrix(
-            (np.concatenate(values), (np.concatenate(rows), np.concatenate(columns))),
-            shape=(3 * n, 3 * n),
-        )
-        return whole[:, self.free.ravel()].tocsr()
+        """T (3n, 3m): displacements at all nodes from local ones of the moving nodes.
+
+        Columns are orthonormal, or zero for directions held at a moving node.
+        """
+        n, moving = len(self.free), self.moving
+        blocks = np.tile(np.eye(3), (n, 1, 1))
+        blocks[self.turned] = self.directions
+        blocks = blocks[moving] * self.free[moving, None, :]
+        indptr = np.concatenate([[0], np.cumsum(self.free.any(axis=1))])
+        shape = (3 * n, 3 * len(moving))
+        return sp.csr_matrix(sp.bsr_matrix((blocks, np.arange(len(moving)), indptr), shape=shape))
+
+    def projectors(self) -> np.ndarray:
+        """Return the matrix (n, 3, 3) of each node that leaves only its free motion."""
+        out = np.zeros((len(self.free), 3, 3))
+        out[:, [0, 1, 2], [0, 1, 2]] = self.free
+        turned = self.directions * self.free[self.turned, None, :]
+        out[self.turned] = np.matmul(turned, turned.transpose(0, 2, 1))
+        return out
 
     def violation(self, vectors: np.ndarray) -> np.ndarray:
         """Return the part of vectors (3n, k) along held directions, local, (n, 3, k)."""

@@ -3,13 +3,16 @@
 from __future__ import annotations
 
 import time
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from ...geometry.errors import SolveError
+from .constraint import Constraint
 from .direct.factor import Factor, factorise
-from .eigen import lowest_modes
+from .eigen import CLUSTER, lowest_modes
+from .mesh_error import Excess, excess
+from .singular import saturation
 from .surface import facet_areas
 from .system import System
 from .threads import threads
@@ -21,6 +24,12 @@ _SEED = 20260101
 #: eigenvalue. Rigid motions are projected out, so a small shift does no harm; it
 #: must only stand clear of rounding in the factorisation.
 _SHIFT, _GROW, _TRIES = 1e-3, 100.0, 4
+
+#: Where to count modes: above the last one by this share of a cluster's width.
+_ABOVE = 0.5
+
+#: Block sizes of further searches where modes were missed.
+_BLOCKS = (24, 48)
 
 
 @dataclass(frozen=True, eq=False, kw_only=True, slots=True)
@@ -38,6 +47,9 @@ class Spectrum:
     direct_solver : name of the factorisation
     seconds : s by stage, ``factor`` and ``eigen``
     solves : right sides solved for
+    missing : modes below the last one that the iteration did not find, by the inertia
+        of a shifted factorisation; None where it was not counted
+    excess : estimated excess of each eigenvalue over the converged one, or None
     """
 
     frequencies: np.ndarray
@@ -47,6 +59,37 @@ class Spectrum:
     direct_solver: str
     seconds: dict[str, float]
     solves: int
+    missing: int | None = None
+    excess: Excess | None = None
+
+    def ordered(self, order: np.ndarray) -> Spectrum:
+        """Return the same modes in another order."""
+        surplus = self.excess
+        return replace(
+            self,
+            frequencies=self.frequencies[order],
+            shapes=self.shapes[order],
+            residuals=self.residuals[order],
+            excess=surplus
+            and Excess(relative=surplus.relative[order], by_cell=surplus.by_cell[:, order]),
+        )
+
+
+def converged(spectrum: Spectrum) -> tuple[np.ndarray, np.ndarray]:
+    """Return the best frequencies (m,), Hz, ascending, and the order (m,) of their modes.
+
+    The estimated mesh error is taken off. Modes of one cluster share the mean
+    of theirs: what tells them apart is the mesh, not the part.
+    """
+    raw = spectrum.frequencies
+    if spectrum.excess is None:
+        return raw, np.arange(len(raw))
+    cluster = np.concatenate([[0], np.cumsum(np.diff(raw) > 0.5 * CLUSTER * raw[:-1])])
+    surplus = np.minimum(spectrum.excess.relative, 0.5)
+    shared = np.bincount(cluster, surplus) / np.bincount(cluster)
+    best = raw * np.sqrt(1.0 - shared[cluster])
+    order = np.argsort(best, kind="stable")
+    return best[order], order
 
 
 def solve_spectrum(
@@ -56,6 +99,8 @@ def solve_spectrum(
     up_to_hz: float | None = None,
     library: str | None = None,
     thread_count: int | None = None,
+    estimate: bool = False,
+    count: bool = False,
 ) -> Spectrum:
     """Return the lowest elastic modes of a system; clusters are whole.
 
@@ -70,6 +115,10 @@ def solve_spectrum(
         Direct solver; see `direct.factor.factorise`.
     thread_count : int, optional
         See `threads.threads`.
+    estimate : bool
+        Whether to estimate the mesh error of each mode.
+    count : bool
+        Whether to count the modes by inertia, where the library can.
 
     Raises
     ------
@@ -81,36 +130,133 @@ def solve_spectrum(
         sigma, factor = _factor(system, library)
         factored = time.perf_counter()
         try:
-            pairs = lowest_modes(
-                lambda b: system.constraint.to_vectors(
-                    factor.solve(system.constraint.to_unknowns(b))
-                ),
-                system.apply_mass,
-                _draw(system),
-                count=modes,
-                limit=None if up_to_hz is None else (2.0 * np.pi * up_to_hz) ** 2,
-                sigma=sigma,
-                known=system.rigid,
-            )
+            found = _search(system, factor, sigma, modes, up_to_hz, None)
+            missing = _missing(system, found.values, library) if count else None
+            for block in _BLOCKS if missing else ():
+                # The count says that modes were missed: search again in larger blocks.
+                found = _search(system, factor, sigma, modes, up_to_hz, block)
+                missing = _missing(system, found.values, library)
+                if not missing:
+                    break
+            solved = time.perf_counter()
+            surplus = _excess(system, factor, sigma, found) if estimate else None
             name = factor.name
         finally:
             factor.close()
-        values, vectors, residuals = _refined(system, pairs.vectors)
-        solved = time.perf_counter()
+        estimated = time.perf_counter()
+    values = found.values
     if len(values) and values[0] <= 0.0:
         raise SolveError(
             "a mode without stiffness is left beside the rigid motions; "
             "the mesh may consist of several bodies that do not touch"
         )
+    if missing:
+        raise SolveError(
+            f"{missing} modes below {np.sqrt(values[-1]) / (2 * np.pi):.6g} Hz were not found, "
+            "though the inertia of the stiffness matrix proves that they exist; "
+            "ask for more modes (solve.modes) or another mesh (solve.size)"
+        )
     return Spectrum(
         frequencies=np.sqrt(values) / (2.0 * np.pi),
-        shapes=np.ascontiguousarray(vectors.T).reshape(len(values), len(system.mesh.points), 3),
-        residuals=residuals,
+        shapes=found.shapes,
+        residuals=found.residuals,
         rigid_modes=system.rigid.shape[1],
         direct_solver=name,
-        seconds={"factor": factored - began, "eigen": solved - factored},
-        solves=pairs.solves,
+        seconds={
+            "factor": factored - began,
+            "eigen": solved - factored,
+            "mesh error": estimated - solved,
+        },
+        solves=found.solves,
+        missing=missing,
+        excess=surplus,
     )
+
+
+@dataclass(frozen=True, eq=False, kw_only=True, slots=True)
+class _Found:
+    """Eigenvalues (m,), shapes (m, n, 3), residuals (m,), and the right sides solved for."""
+
+    values: np.ndarray
+    shapes: np.ndarray
+    residuals: np.ndarray
+    solves: int
+
+
+def _search(
+    system: System,
+    factor: Factor,
+    sigma: float,
+    modes: int | None,
+    up_to_hz: float | None,
+    block: int | None,
+) -> _Found:
+    constraint = system.constraint
+    pairs = lowest_modes(
+        lambda b: constraint.to_vectors(factor.solve(constraint.to_unknowns(b))),
+        system.apply_mass,
+        _draw(system),
+        count=modes,
+        limit=None if up_to_hz is None else (2.0 * np.pi * up_to_hz) ** 2,
+        sigma=sigma,
+        known=system.rigid,
+        block=block,
+    )
+    values, vectors, residuals = _refined(system, pairs.vectors)
+    shapes = np.ascontiguousarray(vectors.T).reshape(len(values), len(constraint.free), 3)
+    return _Found(values=values, shapes=shapes, residuals=residuals, solves=pairs.solves)
+
+
+def _missing(system: System, values: np.ndarray, library: str | None) -> int | None:
+    """Return how many eigenvalues up to the last of `values` are not among them.
+
+    By Sylvester's law of inertia the negative pivots of K - s M are the modes
+    below s; s is a fraction of a cluster's width above the last value. None
+    where the library does not tell.
+    """
+    if len(values) == 0:
+        return None
+    shift = values[-1] * (1.0 + _ABOVE * CLUSTER)
+    factor = factorise(system.shifted(shift), positive=False, library=library)
+    try:
+        below = factor.negative_pivots
+    finally:
+        factor.close()
+    return None if below is None else below - len(values) - system.rigid.shape[1]
+
+
+def _excess(system: System, factor: Factor, sigma: float, found: _Found) -> Excess:
+    constraint = system.constraint
+    allowed = _projectors(constraint)
+
+    def back_solve(forces: np.ndarray) -> np.ndarray:
+        flat = forces.reshape(-1, forces.shape[2])
+        return constraint.to_vectors(factor.solve(constraint.to_unknowns(flat))).reshape(
+            forces.shape
+        )
+
+    return excess(
+        system.mesh,
+        system.material.stiffness(),
+        system.material.density,
+        found.values,
+        found.shapes,
+        back_solve,
+        shift=sigma,
+        allowed=allowed,
+        saturation=saturation(system.mesh, allowed),
+        beds=system.beds,
+    )
+
+
+def _projectors(constraint: Constraint) -> np.ndarray | None:
+    """Return projectors (n, 3, 3) on the motions left to each node; None where all are."""
+    if constraint.free.all():
+        return None
+    projectors = constraint.free[:, :, None] * np.eye(3)
+    turned = constraint.directions * constraint.free[constraint.turned][:, None, :]
+    projectors[constraint.turned] = np.matmul(turned, constraint.directions.transpose(0, 2, 1))
+    return projectors
 
 
 def _factor(system: System, library: str | None) -> tuple[float, Factor]:
@@ -146,9 +292,10 @@ def _lowest_estimate(system: System) -> float:
 def _draw(system: System):
     generator = np.random.default_rng(_SEED)
     constraint = system.constraint
+    width = 3 * len(constraint.moving)
 
     def draw(count: int) -> np.ndarray:
-        return constraint.to_vectors(generator.standard_normal((constraint.unknowns, count)))
+        return constraint.to_vectors(generator.standard_normal((width, count)))
 
     return draw
 

@@ -16,6 +16,7 @@ from .assembly import Matrices, assemble, symmetric
 from .attachment import patch_mass
 from .case import Case
 from .constraint import Constraint, Held, hold_axes, hold_normals, make_constraint, mend_normals
+from .material import Material
 from .mount import AttachedMass, Hold, Mount
 from .pattern import Pattern
 from .reduction import reduce_blocks, scalar_blocks
@@ -31,7 +32,7 @@ class System:
     """K u = lambda M u of a body with its supports.
 
     Vectors live on all nodes, (3n, k), component 3 node + direction, and obey the
-    supports. `stiffness` acts on the unknowns that the supports leave
+    supports. Matrices to be factorised live on the m nodes that can move
     (`constraint` goes between the two).
 
     Attributes
@@ -39,8 +40,9 @@ class System:
     mesh : Mesh
         At the temperature of the case.
     pattern : Pattern
-    stiffness : (free, free) csr, N/m
-        Upper triangle of T^T K T, springs included, all entries of the pattern kept.
+    stiffness : (3m, 3m) bsr, N/m
+        Upper triangle of T^T K T, springs included, with held directions pinned; see
+        `reduction.reduce_blocks`.
     mass : (n, n) csr, kg
         Mass matrix of one direction, attached masses included; M is three of it.
     constraint : Constraint
@@ -49,17 +51,22 @@ class System:
     body_mass, attached_mass : kg
     wave_speed : m/s
         Of axial waves; scales shifts.
+    material : Material
+        At the temperature of the case.
+    beds : (facets (k, 6), normal, tangential stiffness in N/m3) of each spring bed
     """
 
     mesh: Mesh
     pattern: Pattern
-    stiffness: sp.csr_matrix
+    stiffness: sp.bsr_matrix
     mass: sp.csr_matrix
     constraint: Constraint
     rigid: np.ndarray
     body_mass: float
     attached_mass: float
     wave_speed: float
+    material: Material
+    beds: tuple[tuple[np.ndarray, float, float], ...] = ()
 
     @property
     def unknowns(self) -> int:
@@ -72,20 +79,22 @@ class System:
         return (self.mass @ flat).reshape(vectors.shape)
 
     def apply_stiffness(self, vectors: np.ndarray) -> np.ndarray:
-        """Return T^T K v, (free, k), of vectors (3n, k) that obey the supports."""
+        """Return T^T K v, (3m, k), of vectors (3n, k) that obey the supports."""
         upper = self.stiffness
         y = self.constraint.to_unknowns(vectors)
-        return upper @ y + upper.T @ y - upper.diagonal()[:, None] * y
+        blocks = upper.data[upper.indptr[:-1]]
+        own = np.matmul(blocks, y.reshape(-1, 3, y.shape[1])).reshape(y.shape)
+        return upper @ y + upper.T @ y - own
 
-    def shifted(self, sigma: float) -> sp.csr_matrix:
-        """Return the upper triangle of T^T (K - sigma M) T; the pattern of `stiffness`."""
+    def shifted(self, sigma: float) -> sp.bsr_matrix:
+        """Return the upper triangle of T^T (K - sigma M) T, of the pattern of `stiffness`."""
         if sigma == 0.0:
             return self.stiffness
-        upper = sp.triu(self.mass, format="csr")
-        mass = reduce_blocks(self.pattern, scalar_blocks(upper.data), self.constraint)
-        mass.data *= -sigma
-        mass.data += self.stiffness.data
-        return mass
+        values = sp.triu(self.mass, format="csr").data
+        moved = reduce_blocks(self.pattern, scalar_blocks(values), self.constraint)
+        moved.data *= -sigma
+        moved.data += self.stiffness.data
+        return moved
 
 
 def build_system(case: Case, mesh: Mesh, pattern: Pattern | None = None) -> System:
@@ -124,13 +133,25 @@ def build_system(case: Case, mesh: Mesh, pattern: Pattern | None = None) -> Syst
     return System(
         mesh=mesh,
         pattern=bare.pattern,
-        stiffness=reduce_blocks(bare.pattern, bare.blocks, constraint),
+        stiffness=reduce_blocks(
+            bare.pattern, bare.blocks, constraint, pin=float(bare.blocks[0].max())
+        ),
         mass=mass,
         constraint=constraint,
         rigid=rigid_basis(mesh.points, constraint, springs, apply_mass),
         body_mass=body_mass,
         attached_mass=added,
         wave_speed=float(np.sqrt(material.axial_modulus / material.density)),
+        material=material,
+        beds=tuple(
+            (
+                _facets(mesh, mount.faces, f"mount.{number}.faces"),
+                mount.normal_stiffness,
+                mount.tangential_stiffness,
+            )
+            for number, mount in enumerate(case.mounts, start=1)
+            if mount.hold is Hold.SPRINGS
+        ),
     )
 
 

@@ -7,10 +7,10 @@ from typing import Any
 import cvxopt
 import cvxopt.cholmod
 import numpy as np
-import scipy.sparse as sp
 
 from ....geometry.errors import SolveError
 from .superlu import SuperLU
+from .triangle import Upper, entries, refilled
 
 # A compiled module without type information.
 _cholmod: Any = cvxopt.cholmod
@@ -22,8 +22,10 @@ class Cholmod:
     name = "CHOLMOD"
     negative_pivots: int | None = None
 
-    def __init__(self, upper: sp.csr_matrix) -> None:
+    def __init__(self, upper: Upper) -> None:
         _cholmod.options["supernodal"] = 2
+        self._upper = upper
+        upper = entries(upper)
         n = len(upper.indptr) - 1
         # The upper triangle by rows is the lower one by columns, which is what
         # the library reads; entries come in the order of our own data.
@@ -37,7 +39,7 @@ class Cholmod:
 
     def numeric(self, values: np.ndarray) -> None:
         """Factorise anew with new values of the same pattern."""
-        self._fill(values)
+        self._fill(entries(refilled(self._upper, values)).data)
         _guarded(_cholmod.numeric, self._matrix, self._factors)
 
     def solve(self, right: np.ndarray) -> np.ndarray:
@@ -71,7 +73,7 @@ def _guarded(function, *arguments):
         ) from None
 
 
-def make(upper: sp.csr_matrix, positive: bool) -> Cholmod | SuperLU:
+def make(upper: Upper, positive: bool) -> Cholmod | SuperLU:
     """Return the factorisation of a symmetric matrix given by its upper triangle.
 
     Indefinite matrices have no Cholesky factorisation; SuperLU takes them.

@@ -12,9 +12,9 @@ from importlib import import_module
 from typing import Protocol
 
 import numpy as np
-import scipy.sparse as sp
 
 from ....geometry.errors import InputError, ToolError
+from .triangle import Upper
 
 #: Name -> module; in order of preference.
 LIBRARIES = {"mkl": ".mkl", "cholmod": ".cholmod", "superlu": ".superlu"}
@@ -41,7 +41,7 @@ class Factor(Protocol):
         ...
 
     def numeric(self, values: np.ndarray) -> None:
-        """Factorise anew with new values of the same pattern; the analysis is kept."""
+        """Factorise anew with new values (the `data`) of the same pattern and analysis."""
         ...
 
     def close(self) -> None:
@@ -49,13 +49,14 @@ class Factor(Protocol):
         ...
 
 
-def factorise(upper: sp.csr_matrix, *, positive: bool = True, library: str | None = None) -> Factor:
+def factorise(upper: Upper, *, positive: bool = True, library: str | None = None) -> Factor:
     """Return the factorisation of a symmetric matrix.
 
     Parameters
     ----------
-    upper : (n, n) csr
-        Upper triangle with its diagonal, column indices sorted.
+    upper : (n, n) csr or bsr
+        Upper triangle with its diagonal, column indices sorted; of 3 x 3 blocks the
+        diagonal ones are whole.
     positive : bool
         Whether the matrix is positive definite (Cholesky) or indefinite (LDL^T
         with its inertia, where the library can).
@@ -78,7 +79,7 @@ def available() -> tuple[str, ...]:
     return tuple(name for name in LIBRARIES if _load(name) is not None)
 
 
-def _maker(library: str | None) -> Callable[[sp.csr_matrix, bool], Factor]:
+def _maker(library: str | None) -> Callable[[Upper, bool], Factor]:
     if library is not None and library not in LIBRARIES:
         raise InputError(
             "no such direct solver", key=VARIABLE, value=library, allowed=", ".join(LIBRARIES)
@@ -92,7 +93,7 @@ def _maker(library: str | None) -> Callable[[sp.csr_matrix, bool], Factor]:
     )
 
 
-def _load(name: str) -> Callable[[sp.csr_matrix, bool], Factor] | None:
+def _load(name: str) -> Callable[[Upper, bool], Factor] | None:
     try:
         module = import_module(LIBRARIES[name], __package__)
     except (ImportError, OSError):

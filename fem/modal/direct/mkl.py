@@ -13,6 +13,7 @@ import numpy as np
 import scipy.sparse as sp
 
 from ....geometry.errors import SolveError
+from .triangle import Upper
 
 # Phases of the solver.
 _ANALYSE, _NUMERIC, _SOLVE, _FREE = 11, 22, 33, -1
@@ -24,7 +25,7 @@ _POSITIVE, _INDEFINITE = 2, -2
 # for C.
 _OWN_VALUES, _ORDERING, _REFINEMENT, _PERTURBATION = 0, 1, 7, 9
 _SCALING, _MATCHING, _COUNT_FACTOR, _COUNT_FLOPS = 10, 12, 17, 18
-_NEGATIVE, _ZERO_BASED = 22, 34
+_NEGATIVE, _ZERO_BASED, _BLOCK = 22, 34, 36
 
 _OVERFLOW, _NO_MEMORY, _ZERO_PIVOT = -8, -2, -4
 
@@ -71,14 +72,14 @@ class Pardiso:
 
     name = "MKL PARDISO"
 
-    def __init__(self, upper: sp.csr_matrix, positive: bool, wide: bool = False) -> None:
+    def __init__(self, upper: Upper, positive: bool, wide: bool = False) -> None:
         self._integer = np.int64 if wide else np.int32
         self._call_library = _library.pardiso_64 if wide else _library.pardiso
         self._kind = _POSITIVE if positive else _INDEFINITE
         self._n = len(upper.indptr) - 1
         self._indptr = np.ascontiguousarray(upper.indptr, self._integer)
         self._indices = np.ascontiguousarray(upper.indices, self._integer)
-        self._data = np.ascontiguousarray(upper.data, float)
+        self._data = np.ascontiguousarray(upper.data, float).ravel()
         self._handle = np.zeros(64, np.int64)
         parameters = np.zeros(64, self._integer)
         parameters[_OWN_VALUES] = 1
@@ -90,6 +91,9 @@ class Pardiso:
         parameters[_SCALING] = parameters[_MATCHING] = 0
         parameters[_COUNT_FACTOR] = parameters[_COUNT_FLOPS] = 0
         parameters[_ZERO_BASED] = 1
+        # With whole 3 x 3 blocks the analysis works on nodes, three times as fast.
+        blocked = isinstance(upper, sp.bsr_matrix)
+        parameters[_BLOCK] = 3 if blocked else 0
         self._parameters = parameters
         self._closer = weakref.finalize(
             self, _free, self._call_library, self._handle, self._kind, self._n, parameters
@@ -104,7 +108,7 @@ class Pardiso:
 
     def numeric(self, values: np.ndarray) -> None:
         """Factorise anew with new values of the same pattern."""
-        self._data = np.ascontiguousarray(values, float)
+        self._data = np.ascontiguousarray(values, float).ravel()
         self._call(_NUMERIC)
 
     def solve(self, right: np.ndarray) -> np.ndarray:
@@ -195,7 +199,7 @@ def _advice(error: int) -> str:
     return f"the direct solver failed (PARDISO error {error}); try MODEWRIGHT_DIRECT=superlu"
 
 
-def make(upper: sp.csr_matrix, positive: bool) -> Pardiso:
+def make(upper: Upper, positive: bool) -> Pardiso:
     """Return the factorisation of a symmetric matrix given by its upper triangle."""
     if upper.indptr.dtype == np.int64 and upper.nnz >= 2**31:
         return Pardiso(upper, positive, wide=True)

@@ -7,6 +7,7 @@ import scipy.sparse as sp
 from scipy.sparse.linalg import splu
 
 from ....geometry.errors import SolveError
+from .triangle import Upper, entries, refilled
 
 
 class SuperLU:
@@ -15,16 +16,14 @@ class SuperLU:
     name = "SuperLU"
     negative_pivots: int | None = None
 
-    def __init__(self, upper: sp.csr_matrix) -> None:
+    def __init__(self, upper: Upper) -> None:
         self._upper = upper
         self.numeric(upper.data)
 
     def numeric(self, values: np.ndarray) -> None:
         """Factorise anew with new values of the same pattern."""
         self._factors = None
-        upper = sp.csr_matrix(
-            (values, self._upper.indices, self._upper.indptr), shape=self._upper.shape
-        )
+        upper = entries(refilled(self._upper, values))
         whole = (upper + upper.T - sp.diags_array(upper.diagonal())).tocsc()
         try:
             self._factors = splu(
@@ -55,6 +54,6 @@ class SuperLU:
         self._factors = None
 
 
-def make(upper: sp.csr_matrix, positive: bool) -> SuperLU:
+def make(upper: Upper, positive: bool) -> SuperLU:
     """Return the factorisation of a symmetric matrix given by its upper triangle."""
     return SuperLU(upper)
