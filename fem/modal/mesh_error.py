@@ -14,14 +14,21 @@ Ainsworth and Oden, A Posteriori Error Estimation, Wiley 2000, for eigenvalues).
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 import scipy.sparse as sp
 
-from ...geometry.mesh import EDGES, Mesh
-from .element import cell_gradients, cell_quadrature, cell_values
+from ...geometry.mesh import EDGES, FACET_EDGES, Mesh
+from .element import (
+    cell_gradients,
+    cell_quadrature,
+    cell_values,
+    facet_gradients,
+    facet_quadrature,
+    facet_values,
+)
 
 #: Corner triples of the four faces of a cell.
 FACES = ((0, 1, 2), (0, 1, 3), (0, 2, 3), (1, 2, 3))
@@ -62,8 +69,7 @@ def enrich(cells: np.ndarray) -> Enrichment:
         [np.repeat(cells[:, 4:, None], 3, axis=2), np.sort(cells[:, 4:][:, around], axis=2)],
         axis=1,
     )
-    count = int(cells.max()) + 1
-    keys = (mids[..., 0].astype(np.int64) * count + mids[..., 1]) * count + mids[..., 2]
+    keys = _keys(mids, int(cells.max()) + 1)
     _, first, where = np.unique(keys, return_index=True, return_inverse=True)
     return Enrichment(cells=where.reshape(keys.shape), signs=signs, mids=mids.reshape(-1, 3)[first])
 
@@ -114,6 +120,7 @@ def excess(
     shift: float = 0.0,
     allowed: np.ndarray | None = None,
     saturation: np.ndarray | None = None,
+    beds: Sequence[tuple[np.ndarray, float, float]] = (),
 ) -> Excess:
     """Return by how much each eigenvalue exceeds the converged one.
 
@@ -133,11 +140,14 @@ def excess(
         Projector on the motions that the mount leaves each node; None: all.
     saturation : (c,), optional
         Factor over one for cells in which the third order leaves a known part
-        of the error, see `singular_edges`.
+        of the error, see `singular.saturation`.
+    beds : spring beds: facets (k, 6), normal and tangential stiffness, N/m3
     """
     space = enrich(mesh.cells)
     enriched, coupled = _element_matrices(mesh, space, stiffness, density)
     residual = _residual(mesh, space, coupled, eigenvalues, shapes)
+    for facets, normal, tangential in beds:
+        residual -= _bed_forces(mesh, space, facets, normal, tangential, shapes)
     answer = _solve(space, enriched, residual, _allowed(space, allowed))
     local = answer[space.cells].reshape(len(mesh.cells), 30, -1)
     by_cell = np.einsum("cim,cim->cm", local, np.matmul(enriched, local), dtype=float)
@@ -241,6 +251,46 @@ def _residual(
             total.shape
         )
     return total
+
+
+def _bed_forces(
+    mesh: Mesh,
+    space: Enrichment,
+    facets: np.ndarray,
+    normal: float,
+    tangential: float,
+    shapes: np.ndarray,
+) -> np.ndarray:
+    """Return what a spring bed does on the functions of the enrichment, (d, 3, m)."""
+    points, weights = facet_quadrature(6)
+    x = mesh.points[facets]
+    tangents = np.einsum("qad,fai->fqid", facet_gradients(points), x)
+    area = np.cross(tangents[..., 0], tangents[..., 1])
+    measure = np.linalg.norm(area, axis=2)
+    unit = area / measure[..., None]
+    motion = np.einsum("qa,mfai->fqim", facet_values(points), shapes[:, facets], optimize=True)
+    along = np.einsum("fqi,fqim->fqm", unit, motion)
+    pull = tangential * motion + (normal - tangential) * unit[..., None] * along[:, :, None]
+    bary = np.column_stack([1.0 - points.sum(axis=1), points])
+    edges = [bary[:, i] * bary[:, j] * (bary[:, i] - bary[:, j]) for i, j in FACET_EDGES]
+    functions = np.stack([*edges, bary.prod(axis=1)], axis=1)
+    load = np.einsum("fq,qb,fqim->fbim", measure * weights, functions, pull, optimize=True)
+    ends = facets[:, FACET_EDGES]
+    load[:, :3] *= np.where(ends[..., 0] < ends[..., 1], 1.0, -1.0)[..., None, None]
+    mids = facets[:, 3:]
+    wanted = np.concatenate(
+        [np.repeat(mids[:, :, None], 3, axis=2), np.sort(mids, axis=1)[:, None]], axis=1
+    )
+    count = len(mesh.points)
+    where = np.searchsorted(_keys(space.mids, count), _keys(wanted, count))
+    modes = len(shapes)
+    total = _gathered(where, load.reshape(-1, 3 * modes), len(space.mids))
+    return total.reshape(-1, 3, modes)
+
+
+def _keys(mids: np.ndarray, count: int) -> np.ndarray:
+    """Return one number for each triple of mid-side nodes (..., 3)."""
+    return (mids[..., 0].astype(np.int64) * count + mids[..., 1]) * count + mids[..., 2]
 
 
 def _gathered(where: np.ndarray, values: np.ndarray, count: int) -> np.ndarray:

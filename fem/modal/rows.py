@@ -18,7 +18,8 @@ from .theory.bars import Prediction
 
 def mode_rows(
     case: Case,
-    frequencies: np.ndarray,
+    best: Sequence[float],
+    raw: Sequence[float],
     identity: Identity,
     theory: Sequence[Prediction | None],
     residuals: np.ndarray,
@@ -28,7 +29,8 @@ def mode_rows(
     Parameters
     ----------
     case : Case
-    frequencies : (m,) Hz, ascending, of the mesh
+    best : (m,) Hz, ascending, less the mesh error
+    raw : (m,) Hz, of the mesh
     identity : names and shapes of the m modes
     theory : of each mode
     residuals : (m,)
@@ -38,8 +40,7 @@ def mode_rows(
     InputError
         If a target, a measured row or the reference mode fits no mode, or several.
     """
-    # No mesh error is estimated, so the value of the mesh is the best there is.
-    best = [float(f) for f in frequencies]
+    best = [float(f) for f in best]
     names = identity.names
     reference = _reference(case, best, names)
     targets = _targets(case, best, names)
@@ -56,8 +57,8 @@ def mode_rows(
                 mixed=label.mixed,
                 pair=label.pair,
                 frequency_hz=hz,
-                raw_hz=float(frequencies[i]),
-                mesh_error_cents=None,
+                raw_hz=float(raw[i]),
+                mesh_error_cents=cents(float(raw[i]), hz),
                 note=note,
                 cents_from_note=off,
                 ratio=hz / reference,

@@ -19,7 +19,7 @@ from .modes import MeshFacts, Modes, SolveFacts
 from .naming.beats import beat_warnings
 from .naming.identify import identify
 from .rows import mode_rows
-from .spectrum import solve_spectrum
+from .spectrum import converged, solve_spectrum
 from .system import REFERENCE_TEMPERATURE, build_system
 from .theory.predict import predict
 from .theory.support import held_of
@@ -88,25 +88,26 @@ def _solve(case: Case, mesh: Mesh | None, progress: Progress) -> Modes:
 
     progress(f"solving {system.unknowns} unknowns")
     settings = case.settings
-    spectrum = solve_spectrum(system, modes=settings.modes, up_to_hz=settings.up_to)
+    spectrum = solve_spectrum(
+        system, modes=settings.modes, up_to_hz=settings.up_to, estimate=True, count=True
+    )
     if len(spectrum.frequencies) == 0:
         raise InputError(
             "no mode lies that low", key="solve.up_to_hz", value=settings.up_to, allowed="more"
         )
-    seconds["factor"] = spectrum.seconds["factor"]
-    seconds["eigen"] = spectrum.seconds["eigen"]
+    seconds |= spectrum.seconds
+    best, order = converged(spectrum)
+    spectrum = spectrum.ordered(order)
 
     progress(f"naming {len(spectrum.frequencies)} modes")
     naming = perf_counter()
     rise = case.temperature - REFERENCE_TEMPERATURE
     # The mesh of the system is as warm as the case, and so must its anatomy be.
     anatomy = _anatomy(case, mesh).scaled(1.0 + (case.material.expansion or 0.0) * rise)
-    identity = identify(
-        system.mesh, anatomy, spectrum.frequencies, spectrum.shapes, csr_array(system.mass)
-    )
+    identity = identify(system.mesh, anatomy, best, spectrum.shapes, csr_array(system.mass))
     held = held_of(case.mounts, anatomy, case.attached_masses)
     theory = predict(anatomy, case.material.at(rise), held, identity.names)
-    rows = mode_rows(case, spectrum.frequencies, identity, theory, spectrum.residuals)
+    rows = mode_rows(case, best, spectrum.frequencies, identity, theory, spectrum.residuals)
     seconds["names"] = perf_counter() - naming
     seconds["total"] = perf_counter() - start
     return Modes(
@@ -125,13 +126,14 @@ def _solve(case: Case, mesh: Mesh | None, progress: Progress) -> Modes:
         ),
         solve_facts=SolveFacts(
             direct_solver=spectrum.direct_solver,
-            missing_modes=None,
+            missing_modes=spectrum.missing,
             rigid_modes=spectrum.rigid_modes,
             seconds=seconds,
             peak_mb=peak_megabytes(),
         ),
         warnings=(
             *_material_warnings(case),
+            *_count_warnings(spectrum.missing),
             *beat_warnings([row.frequency_hz for row in rows], identity.names),
         ),
     )
@@ -150,6 +152,12 @@ def _material_warnings(case: Case) -> tuple[str, ...]:
         f"{case.material.name} has no modulus_slope_ppm_per_k: at {case.temperature:g} degrees C "
         "only its expansion is counted",
     )
+
+
+def _count_warnings(missing: int | None) -> tuple[str, ...]:
+    if missing is not None:
+        return ()
+    return ("this direct solver cannot count modes, so none is proved to be there in full number",)
 
 
 def _silent(words: str) -> None:
