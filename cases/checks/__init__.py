@@ -1,0 +1,1 @@
+"""Published checks: parts whose frequencies are known from elsewhere, solved and compared."""
