@@ -20,7 +20,11 @@ _TRUST_NOTE = (
     "Not in these numbers: what the real part and its mount add. In bending, 1 % of thickness "
     "is 17 cents, 1 % of length 34, 1 % of modulus 9; a clamp that gives flattens all of them."
 )
-_MESH_NOTE = "The frequencies are those of the mesh, a little sharp; no mesh error is estimated."
+_NO_ESTIMATE_NOTE = (
+    "The frequencies are those of the mesh, a little sharp; no mesh error is estimated."
+)
+_ESTIMATE_NOTE = "mesh cents: how sharp the mesh is, by estimate; it is taken off the Hz."
+_COUNTED_NOTE = "No mode is missing up to the last one: they were counted by inertia."
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -77,8 +81,10 @@ def modes_table(modes: Modes) -> Table:
         notes.append(_PAIR_NOTE)
     if any(mode.mixed for mode in modes.modes):
         notes.append(_MIXED_NOTE)
-    if all(mode.mesh_error_cents is None for mode in modes.modes):
-        notes.append(_MESH_NOTE)
+    estimated = any(mode.mesh_error_cents is not None for mode in modes.modes)
+    notes.append(_ESTIMATE_NOTE if estimated else _NO_ESTIMATE_NOTE)
+    if modes.solve_facts.missing_modes == 0:
+        notes.append(_COUNTED_NOTE)
     notes.append(_TRUST_NOTE)
     return Table(
         headers=tuple(column.header for column in columns),
