@@ -6,7 +6,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 from modewright.cases.reader import build_case, read_case
-from modewright.fem.modal.mesh_error import enrich, enrichment_functions
+from modewright.fem.modal.enrichment import enrich, enrichment_functions
 from modewright.fem.modal.singular import saturation
 from modewright.fem.modal.solve import solve
 from modewright.geometry.mesh import EDGES, Mesh

@@ -20,7 +20,7 @@ from dataclasses import dataclass
 import numpy as np
 import scipy.sparse as sp
 
-from ...geometry.mesh import EDGES, FACET_EDGES, Mesh
+from ...geometry.mesh import Mesh
 from .element import (
     cell_gradients,
     cell_quadrature,
@@ -29,68 +29,12 @@ from .element import (
     facet_quadrature,
     facet_values,
 )
-
-#: Corner triples of the four faces of a cell.
-FACES = ((0, 1, 2), (0, 1, 3), (0, 2, 3), (1, 2, 3))
+from .enrichment import Enrichment, enrich, enrichment_functions, facet_functions
 
 #: Conjugate-gradient steps: the energy has settled to a few per cent.
 STEPS = 4
 
 _CHUNK = 4096
-
-
-@dataclass(frozen=True, eq=False, kw_only=True, slots=True)
-class Enrichment:
-    """The third-order functions of a mesh, one vector unknown each.
-
-    Attributes
-    ----------
-    cells : (c, 10) int
-        Function of each edge (0..5) and face (6..9) of each cell.
-    signs : (c, 10) float
-        -1 where the edge runs against the mesh-wide direction, else 1.
-    mids : (d, 3) int
-        Mid-side nodes on the edge (three times the same) or round the face.
-    """
-
-    cells: np.ndarray
-    signs: np.ndarray
-    mids: np.ndarray
-
-
-def enrich(cells: np.ndarray) -> Enrichment:
-    """Return the enrichment of second-order cells (c, 10)."""
-    corners = cells[:, :4]
-    edges = corners[:, EDGES]
-    signs = np.ones((len(cells), 10))
-    signs[:, :6] = np.where(edges[..., 0] < edges[..., 1], 1.0, -1.0)
-    around = [[EDGES.index(pair) for pair in ((i, j), (j, k), (i, k))] for i, j, k in FACES]
-    mids = np.concatenate(
-        [np.repeat(cells[:, 4:, None], 3, axis=2), np.sort(cells[:, 4:][:, around], axis=2)],
-        axis=1,
-    )
-    keys = _keys(mids, int(cells.max()) + 1)
-    _, first, where = np.unique(keys, return_index=True, return_inverse=True)
-    return Enrichment(cells=where.reshape(keys.shape), signs=signs, mids=mids.reshape(-1, 3)[first])
-
-
-def enrichment_functions(points: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
-    """Return values (q, 10) and reference gradients (q, 10, 3) of the added functions."""
-    bary = np.column_stack([1.0 - points.sum(axis=1), points])
-    slopes = np.vstack([-np.ones(3), np.eye(3)])
-    values = np.empty((len(points), 10))
-    gradients = np.empty((len(points), 10, 3))
-    for k, (i, j) in enumerate(EDGES):
-        a, b = bary[:, i], bary[:, j]
-        values[:, k] = a * b * (a - b)
-        gradients[:, k] = np.outer(2 * a * b - b * b, slopes[i])
-        gradients[:, k] += np.outer(a * a - 2 * a * b, slopes[j])
-    for k, (i, j, m) in enumerate(FACES, 6):
-        a, b, c = bary[:, i], bary[:, j], bary[:, m]
-        values[:, k] = a * b * c
-        gradients[:, k] = np.outer(b * c, slopes[i])
-        gradients[:, k] += np.outer(a * c, slopes[j]) + np.outer(a * b, slopes[m])
-    return values, gradients
 
 
 @dataclass(frozen=True, eq=False, kw_only=True, slots=True)
@@ -146,18 +90,22 @@ def excess(
     space = enrich(mesh.cells)
     enriched, coupled = _element_matrices(mesh, space, stiffness, density)
     residual = _residual(mesh, space, coupled, eigenvalues, shapes)
-    for facets, normal, tangential in beds:
-        residual -= _bed_forces(mesh, space, facets, normal, tangential, shapes)
-    answer = _solve(space, enriched, residual, _allowed(space, allowed))
-    local = answer[space.cells].reshape(len(mesh.cells), 30, -1)
-    by_cell = np.einsum("cim,cim->cm", local, np.matmul(enriched, local), dtype=float)
-    energy = by_cell.sum(axis=0)
+    parts = [_Elements(where=space.cells, stiffness=enriched)]
+    for bed in beds:
+        elements, forces = _bed(mesh, space, bed, shapes)
+        residual -= _scattered(elements.where, forces, residual.shape)
+        parts.append(elements)
+    answer = _solve(parts, residual, _allowed(space, allowed))
+    by_cell, *in_beds = (part.energy(answer) for part in parts)
+    energy = by_cell.sum(axis=0) + sum(bed.sum(axis=0) for bed in in_beds)
+    by_cell *= energy / np.maximum(by_cell.sum(axis=0), 1e-300)
     # The second-order space moves too, in answer to the enrichment. With the
     # first term g of the Neumann series of the Schur complement, the energy
     # is E / (1 - g): a lower bound by the Lanczos argument, and close.
+    local = parts[0].local(answer)
     force = np.matmul(coupled.stiffness.transpose(0, 2, 1), local)
     force = _gathered(mesh.cells, force.reshape(-1, 3 * len(eigenvalues)), len(mesh.points))
-    force = force.reshape(len(mesh.points), 3, -1).astype(float)
+    force = force.reshape(len(mesh.points), 3, -1)
     if allowed is not None:
         force = np.matmul(allowed, force)
     answered = np.einsum("nim,nim->m", force, back_solve(force))
@@ -169,6 +117,35 @@ def excess(
     if saturation is not None:
         by_cell *= saturation[:, None]
     return Excess(relative=by_cell.sum(axis=0), by_cell=by_cell)
+
+
+@dataclass(frozen=True, eq=False, kw_only=True, slots=True)
+class _Elements:
+    """Elements of the enrichment: cells, or the facets of a spring bed.
+
+    Attributes
+    ----------
+    where : (e, k) int
+        Functions of each.
+    stiffness : (e, 3 k, 3 k) float
+    """
+
+    where: np.ndarray
+    stiffness: np.ndarray
+
+    @property
+    def width(self) -> int:
+        """Number of functions of an element."""
+        return self.where.shape[1]
+
+    def local(self, x: np.ndarray) -> np.ndarray:
+        """Return element vectors (e, 3 k, m) of vectors (d, 3, m)."""
+        return x[self.where].reshape(len(self.where), 3 * self.width, -1)
+
+    def energy(self, x: np.ndarray) -> np.ndarray:
+        """Return the energy (e, m) that vectors (d, 3, m) put into each element."""
+        own = self.local(x)
+        return np.einsum("eim,eim->em", own, np.matmul(self.stiffness, own))
 
 
 @dataclass(frozen=True, eq=False, kw_only=True, slots=True)
@@ -195,8 +172,8 @@ def _element_matrices(
     both = np.concatenate([bubble_slopes, slopes], axis=1)
     tensor = _gradient_tensor(stiffness)
     count = len(mesh.cells)
-    enriched = np.empty((count, 30, 30), np.float32)
-    coupling = np.empty((count, 30, 30), np.float32)
+    enriched = np.empty((count, 30, 30))
+    coupling = np.empty((count, 30, 30))
     mass = np.empty((count, 10, 10))
     product = bubbles[:, :, None] * values[:, None, :]
     for start in range(0, count, _CHUNK):
@@ -246,51 +223,32 @@ def _residual(
         flat = local.reshape(size, 30, modes)
         inertia = np.matmul(coupled.mass[part], local.reshape(size, 10, 3 * modes))
         load = inertia.reshape(size, 30, modes) * eigenvalues
-        load -= np.matmul(coupled.stiffness[part].astype(float), flat)
+        load -= np.matmul(coupled.stiffness[part], flat)
         total += _gathered(space.cells[part], load.reshape(-1, 3 * modes), len(total)).reshape(
             total.shape
         )
     return total
 
 
-def _bed_forces(
-    mesh: Mesh,
-    space: Enrichment,
-    facets: np.ndarray,
-    normal: float,
-    tangential: float,
-    shapes: np.ndarray,
-) -> np.ndarray:
-    """Return what a spring bed does on the functions of the enrichment, (d, 3, m)."""
+def _bed(
+    mesh: Mesh, space: Enrichment, bed: tuple[np.ndarray, float, float], shapes: np.ndarray
+) -> tuple[_Elements, np.ndarray]:
+    """Return what a spring bed adds to the enrichment, and its forces (f, 12, m) against modes."""
+    facets, normal, tangential = bed
     points, weights = facet_quadrature(6)
-    x = mesh.points[facets]
-    tangents = np.einsum("qad,fai->fqid", facet_gradients(points), x)
+    tangents = np.einsum("qad,fai->fqid", facet_gradients(points), mesh.points[facets])
     area = np.cross(tangents[..., 0], tangents[..., 1])
     measure = np.linalg.norm(area, axis=2)
     unit = area / measure[..., None]
+    springs = tangential * np.eye(3) + (normal - tangential) * unit[..., None] * unit[:, :, None]
+    springs *= (measure * weights)[..., None, None]
+    where, values = facet_functions(space, facets, points)
+    stiffness = np.einsum("fqb,fqij,fqc->fbicj", values, springs, values, optimize=True)
     motion = np.einsum("qa,mfai->fqim", facet_values(points), shapes[:, facets], optimize=True)
-    along = np.einsum("fqi,fqim->fqm", unit, motion)
-    pull = tangential * motion + (normal - tangential) * unit[..., None] * along[:, :, None]
-    bary = np.column_stack([1.0 - points.sum(axis=1), points])
-    edges = [bary[:, i] * bary[:, j] * (bary[:, i] - bary[:, j]) for i, j in FACET_EDGES]
-    functions = np.stack([*edges, bary.prod(axis=1)], axis=1)
-    load = np.einsum("fq,qb,fqim->fbim", measure * weights, functions, pull, optimize=True)
-    ends = facets[:, FACET_EDGES]
-    load[:, :3] *= np.where(ends[..., 0] < ends[..., 1], 1.0, -1.0)[..., None, None]
-    mids = facets[:, 3:]
-    wanted = np.concatenate(
-        [np.repeat(mids[:, :, None], 3, axis=2), np.sort(mids, axis=1)[:, None]], axis=1
-    )
-    count = len(mesh.points)
-    where = np.searchsorted(_keys(space.mids, count), _keys(wanted, count))
-    modes = len(shapes)
-    total = _gathered(where, load.reshape(-1, 3 * modes), len(space.mids))
-    return total.reshape(-1, 3, modes)
-
-
-def _keys(mids: np.ndarray, count: int) -> np.ndarray:
-    """Return one number for each triple of mid-side nodes (..., 3)."""
-    return (mids[..., 0].astype(np.int64) * count + mids[..., 1]) * count + mids[..., 2]
+    forces = np.einsum("fqb,fqij,fqjm->fbim", values, springs, motion, optimize=True)
+    count = len(facets)
+    elements = _Elements(where=where, stiffness=stiffness.reshape(count, 12, 12))
+    return elements, forces.reshape(count, 12, -1)
 
 
 def _gathered(where: np.ndarray, values: np.ndarray, count: int) -> np.ndarray:
@@ -316,45 +274,46 @@ def _allowed(space: Enrichment, allowed: np.ndarray | None) -> np.ndarray | None
     return np.matmul(kept, vectors.transpose(0, 2, 1))
 
 
-def _solve(
-    space: Enrichment, enriched: np.ndarray, residual: np.ndarray, free: np.ndarray | None
-) -> np.ndarray:
+def _scattered(where: np.ndarray, values: np.ndarray, shape: tuple[int, ...]) -> np.ndarray:
+    """Return the sum (d, 3, m) of element values (e, 3 k, m) at their functions (e, k)."""
+    return _gathered(where, values.reshape(where.size, -1), shape[0]).reshape(shape)
+
+
+def _solve(parts: Sequence[_Elements], residual: np.ndarray, free: np.ndarray | None) -> np.ndarray:
     """Return the solutions (d, 3, m) of the error equation for all modes at once."""
-    count, _, modes = residual.shape
-    places = space.cells.ravel()
-    own = np.stack([enriched[:, 3 * a : 3 * a + 3, 3 * a : 3 * a + 3] for a in range(10)], axis=1)
-    diagonal = _gathered(space.cells, own.reshape(-1, 9).astype(float), count).reshape(-1, 3, 3)
+    shape = residual.shape
+    diagonal = np.zeros((shape[0], 3, 3))
+    for part in parts:
+        own = [part.stiffness[:, 3 * a : 3 * a + 3, 3 * a : 3 * a + 3] for a in range(part.width)]
+        diagonal += _scattered(part.where, np.stack(own, axis=1), diagonal.shape)
     if free is not None:
         blocked = (np.eye(3) - free) * np.trace(diagonal, axis1=1, axis2=2)[:, None, None]
         diagonal = np.matmul(np.matmul(free, diagonal), free) + blocked
-        residual = np.matmul(free, residual)
-        free = free.astype(np.float32)
-    inverse = np.linalg.inv(diagonal).astype(np.float32)
-    adder = sp.csr_matrix(
-        (np.ones(places.size, np.float32), (places, np.arange(places.size))), (count, places.size)
-    )
+    inverse = np.linalg.inv(diagonal)
 
     def project(x: np.ndarray) -> np.ndarray:
         return x if free is None else np.matmul(free, x)
 
     def apply(x: np.ndarray) -> np.ndarray:
-        y = np.matmul(enriched, x[space.cells].reshape(-1, 30, modes))
-        return project((adder @ y.reshape(-1, 3 * modes)).reshape(count, 3, modes))
+        total = np.zeros(shape)
+        for part in parts:
+            total += _scattered(part.where, np.matmul(part.stiffness, part.local(x)), shape)
+        return project(total)
 
     def dot(x: np.ndarray, y: np.ndarray) -> np.ndarray:
-        return np.maximum(np.einsum("dim,dim->m", x, y, dtype=float), 1e-30)
+        # A mode without error has no residual; its steps are then all zero.
+        return np.maximum(np.einsum("dim,dim->m", x, y), 1e-300)
 
-    scale = np.sqrt(np.maximum(np.einsum("dim,dim->m", residual, residual), 1e-300))
-    r = (residual / scale).astype(np.float32)
+    r = project(residual)
     z = project(np.matmul(inverse, r))
-    p, x, rz = z.copy(), np.zeros_like(r), dot(r, z)
+    p, x, rz = z.copy(), np.zeros(shape), dot(r, z)
     for _ in range(STEPS):
         ap = apply(p)
-        step = (rz / dot(p, ap)).astype(np.float32)
+        step = rz / dot(p, ap)
         x += step * p
-        r -= step * ap
+        r = r - step * ap
         z = project(np.matmul(inverse, r))
         new = dot(r, z)
-        p = z + (new / rz).astype(np.float32) * p
+        p = z + (new / rz) * p
         rz = new
-    return x * scale.astype(np.float32)
+    return x

@@ -97,7 +97,8 @@ class SolveFacts:
     direct_solver : name of the factorisation used
     missing_modes : modes proved to be missing; None where not counted
     rigid_modes : rigid-body modes found and left out
-    seconds : stage -> s; stages mesh, assemble, factor, eigen, names, total
+    seconds : stage -> s; stages mesh, assemble, factor, eigen (counting included),
+        mesh_error, names, total
     peak_mb : peak memory of this process, MB
     """
 

@@ -8,7 +8,6 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from ...geometry.errors import SolveError
-from .constraint import Constraint
 from .direct.factor import Factor, factorise
 from .eigen import CLUSTER, lowest_modes
 from .mesh_error import Excess, excess
@@ -139,7 +138,8 @@ def solve_spectrum(
                 if not missing:
                     break
             solved = time.perf_counter()
-            surplus = _excess(system, factor, sigma, found) if estimate else None
+            wanted = estimate and len(found.values) > 0
+            surplus = _excess(system, factor, sigma, found) if wanted else None
             name = factor.name
         finally:
             factor.close()
@@ -165,7 +165,7 @@ def solve_spectrum(
         seconds={
             "factor": factored - began,
             "eigen": solved - factored,
-            "mesh error": estimated - solved,
+            "mesh_error": estimated - solved,
         },
         solves=found.solves,
         missing=missing,
@@ -227,7 +227,7 @@ def _missing(system: System, values: np.ndarray, library: str | None) -> int | N
 
 def _excess(system: System, factor: Factor, sigma: float, found: _Found) -> Excess:
     constraint = system.constraint
-    allowed = _projectors(constraint)
+    allowed = None if constraint.free.all() else constraint.projectors()
 
     def back_solve(forces: np.ndarray) -> np.ndarray:
         flat = forces.reshape(-1, forces.shape[2])
@@ -247,16 +247,6 @@ def _excess(system: System, factor: Factor, sigma: float, found: _Found) -> Exce
         saturation=saturation(system.mesh, allowed),
         beds=system.beds,
     )
-
-
-def _projectors(constraint: Constraint) -> np.ndarray | None:
-    """Return projectors (n, 3, 3) on the motions left to each node; None where all are."""
-    if constraint.free.all():
-        return None
-    projectors = constraint.free[:, :, None] * np.eye(3)
-    turned = constraint.directions * constraint.free[constraint.turned][:, None, :]
-    projectors[constraint.turned] = np.matmul(turned, constraint.directions.transpose(0, 2, 1))
-    return projectors
 
 
 def _factor(system: System, library: str | None) -> tuple[float, Factor]:
