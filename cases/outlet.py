@@ -3,20 +3,24 @@
 from __future__ import annotations
 
 import os
-import tempfile
 from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
 
 from ..geometry.errors import InputError
+from ..geometry.scratch import refuse_busy, scratch
 
 
 def check_folder(path: Path) -> None:
-    """Raise InputError unless results can be written into the folder, made or yet to be made."""
+    """Raise InputError unless results can be written into the folder, made or yet to be made.
+
+    Raises ToolError if another run is writing there now.
+    """
     try:
         if path.exists() and not path.is_dir():
             raise InputError("is a file, not a folder", key="--out", value=str(path))
         _check_writable(path)
+        refuse_busy(path)
     except OSError as error:
         raise _unwritable(path, error) from None
 
@@ -58,10 +62,9 @@ def beside(path: Path) -> Iterator[Path]:
     """
     try:
         path.parent.mkdir(parents=True, exist_ok=True)
-        with tempfile.TemporaryDirectory(dir=path.parent, prefix=".modewright-") as folder:
-            temporary = Path(folder) / path.name
-            yield temporary
-            temporary.replace(path)
+        with scratch(path) as hidden:
+            yield hidden / path.name
+            (hidden / path.name).replace(path)
     except OSError as error:
         raise _unwritable(path, error) from None
 

@@ -9,7 +9,6 @@ from __future__ import annotations
 
 import contextlib
 import io
-import os
 import warnings
 from collections.abc import Iterator, Mapping
 from pathlib import Path
@@ -21,6 +20,7 @@ import numpy as np
 from .errors import InputError, ToolError
 from .intake import mesh_of
 from .mesh import Mesh
+from .scratch import scratch
 from .shape import MM
 from .unit import UNITS
 
@@ -70,6 +70,10 @@ def write_mesh(path: Path, mesh: Mesh) -> None:
             raise ToolError(
                 f"{path.name}: this format needs the Python package {error.name!r}, "
                 "which is not installed; .msh, .vtu and .inp need nothing more"
+            ) from None
+        except OSError as error:
+            raise ToolError(
+                f"{path.name}: could not be written: {error.strerror or error}"
             ) from None
         except (Exception, SystemExit) as error:
             # Writers raise whatever a value they cannot print makes them stumble over.
@@ -206,13 +210,10 @@ def _holds(kept: meshio.Mesh, mesh: Mesh) -> bool:
 
 @contextlib.contextmanager
 def _beside(path: Path) -> Iterator[Path]:
-    """Give a temporary name in the same folder; rename to `path` at the end."""
-    temporary = path.with_name(f".{path.stem}.{os.getpid()}{path.suffix}")
-    try:
-        yield temporary
-        temporary.replace(path)
-    finally:
-        temporary.unlink(missing_ok=True)
+    """Give a temporary name on the same file system; rename to `path` at the end."""
+    with scratch(path) as hidden:
+        yield hidden / path.name
+        (hidden / path.name).replace(path)
 
 
 @contextlib.contextmanager

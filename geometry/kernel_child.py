@@ -1,4 +1,7 @@
-"""The child process that runs the kernel: a pickled request in, a pickled answer out."""
+"""The child process that runs the kernel: a pickled request in, a pickled answer out.
+
+Its argument is the process id of its parent, with which it ends.
+"""
 
 from __future__ import annotations
 
@@ -7,9 +10,12 @@ import pickle
 import sys
 from typing import Any
 
+from .orphan import end_with
+
 
 def main() -> None:
     """Answer one request from standard input on what was standard output."""
+    end_with(int(sys.argv[1]))
     # The CAD library prints on its own; only the answer may go to the parent's pipe.
     answers = os.fdopen(os.dup(1), "wb")
     os.dup2(2, 1)

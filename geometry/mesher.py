@@ -15,6 +15,7 @@ from .mesh import Mesh
 
 if TYPE_CHECKING:
     from .shape import Shape
+    from .size_field import SizeField
     from .solid import Patch
 
 #: Debian package of each system library that the CAD library needs.
@@ -44,6 +45,8 @@ def generate(
     *,
     size_mm: float | None = None,
     patches: tuple[Patch, ...] = (),
+    coarse: bool = False,
+    size_field: SizeField | None = None,
     time_limit: float = 300.0,
 ) -> Mesh:
     """Return the second-order mesh of a shape.
@@ -56,6 +59,10 @@ def generate(
         (`geometry.sizing`).
     patches : tuple of Patch
         Rectangles imprinted on flat named faces.
+    coarse : bool
+        Without a size, a coarse mesh to begin a refinement with.
+    size_field : SizeField, optional
+        Element sizes from place to place, instead of one.
     time_limit : float, s
 
     Raises
@@ -76,7 +83,13 @@ def generate(
                 value=patches[0].name,
             )
         return shape.family.mesh(shape.dimensions, shape.folder)
-    request = {"solid": shape.solid(), "size": size_mm, "patches": tuple(patches)}
+    request = {
+        "solid": shape.solid(),
+        "size": size_mm,
+        "patches": tuple(patches),
+        "coarse": coarse,
+        "local": size_field,
+    }
     answer = _ask(request, time_limit)
     if isinstance(answer, Mesh):
         return answer
@@ -94,7 +107,7 @@ def _ask(request: dict[str, Any], time_limit: float) -> Any:
     """Return the child's answer to a request."""
     quiet = {**os.environ, "OMP_NUM_THREADS": "1", "OPENBLAS_NUM_THREADS": "1"}
     with subprocess.Popen(
-        _COMMAND,
+        [*_COMMAND, str(os.getpid())],
         stdin=subprocess.PIPE,
         stdout=subprocess.PIPE,
         stderr=subprocess.PIPE,

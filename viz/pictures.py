@@ -1,10 +1,12 @@
 """All pictures of a result, drawn in a child process: a crash there loses nothing here.
 
-The child is this module, run with the gallery's file and the folder to draw in.
+The child is this module, run with the gallery's file, the folder to draw in and the
+process id of its parent, with which it ends.
 """
 
 from __future__ import annotations
 
+import os
 import subprocess
 import sys
 import tempfile
@@ -12,6 +14,7 @@ from collections.abc import Callable
 from pathlib import Path
 
 from ..geometry.errors import ToolError
+from ..geometry.orphan import end_with
 from .gallery import Gallery, load_gallery, save_gallery
 from .probe import ending, rendering_environment
 
@@ -30,6 +33,7 @@ def draw_pictures(
     ----------
     gallery : Gallery
     folder : Path
+        Also holds the child's input for a while.
     progress : callable, optional
         Called with what is being drawn.
 
@@ -38,12 +42,12 @@ def draw_pictures(
     ToolError
         If the child process failed; what it finished stays in the folder.
     """
-    with tempfile.TemporaryDirectory() as scratch:
+    with tempfile.TemporaryDirectory(dir=folder, prefix=".") as scratch:
         job = Path(scratch) / "gallery.npz"
         save_gallery(job, gallery)
         with (Path(scratch) / "errors.txt").open("w+", encoding="utf-8", errors="replace") as log:
             with subprocess.Popen(
-                [sys.executable, "-P", "-m", __name__, str(job), str(folder)],
+                [sys.executable, "-P", "-m", __name__, str(job), str(folder), str(os.getpid())],
                 env=rendering_environment(),
                 stdin=subprocess.DEVNULL,
                 stdout=subprocess.PIPE,
@@ -78,4 +82,5 @@ def _draw(job: Path, folder: Path) -> None:
 
 if __name__ == "__main__":
     sys.stdout.reconfigure(encoding="utf-8")  # type: ignore[union-attr]
+    end_with(int(sys.argv[3]))
     _draw(Path(sys.argv[1]), Path(sys.argv[2]))

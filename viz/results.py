@@ -3,9 +3,6 @@
 from __future__ import annotations
 
 import re
-import shutil
-import tempfile
-import time
 from collections.abc import Callable
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
@@ -13,20 +10,18 @@ from pathlib import Path
 
 from ..fem.modal.modes import Modes
 from ..geometry.errors import ToolError
+from ..geometry.scratch import scratch
 from .document import document_text, modes_document
 from .exchange import write_modes_vtu, write_npz
 from .gallery import make_gallery
 from .glb import write_modes_glb
 from .pictures import SHEET, draw_pictures
+from .place import may_swap, replace_each, swap
 from .probe import rendering_problem
 from .table import modes_csv
 
 _DATA = ("modes.json", "modes.csv", "modes.npz", "modes.vtu", "modes.glb")
 _ANIMATION = re.compile(r"mode_\d{2,}\.webp")
-_STAGING = ".modewright-"
-
-#: Staging folders older than this were left by a killed run, s.
-_ABANDONED = 24 * 3600.0
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -52,9 +47,11 @@ def write_results(
 ) -> Written:
     """Write every file of a result.
 
-    The whole set is made in a hidden folder beside its place and moved there at
-    the end, file by file; files of an earlier result that are not part of this
-    one go. Until then the earlier set stays as it was.
+    The whole set is made in a hidden folder beside its place, which the two then
+    exchange in one step: a run that is killed leaves the earlier set or the new
+    one. Files in the folder that are not ours stay; those of an earlier result that
+    are not part of this one go. Where folders cannot be exchanged (`place.may_swap`)
+    the files move one by one, modes.json first out and last in.
 
     Parameters
     ----------
@@ -79,30 +76,31 @@ def write_results(
     """
     tell = progress or (lambda _what: None)
     try:
-        folder.mkdir(parents=True, exist_ok=True)
-        _clear_abandoned(folder)
-        staging = Path(tempfile.mkdtemp(prefix=_STAGING, dir=folder))
+        folder.absolute().parent.mkdir(parents=True, exist_ok=True)
+        whole = may_swap(folder)
+        if not whole:
+            folder.mkdir(exist_ok=True)
+        with scratch(folder, inside=not whole) as hidden:
+            staging = hidden / "new"
+            staging.mkdir()
+            skipped: tuple[str, ...] = ()
+            with ThreadPoolExecutor(max_workers=1) as beside:
+                # Trying the renderer takes a second; the numbers are written meanwhile.
+                problem = beside.submit(rendering_problem) if pictures else None
+                _write_data(modes, staging, tell)
+                if problem is not None:
+                    tell("trying the renderer")
+                    try:
+                        skipped = _draw(modes, staging, problem.result(), tell)
+                    except KeyboardInterrupt:
+                        # The numbers may have taken long; they are kept.
+                        _publish(staging, folder, whole)
+                        raise
+            return Written(files=_publish(staging, folder, whole), skipped=skipped)
     except OSError as error:
-        raise ToolError(f"cannot write in {folder}: {error.strerror}") from None
-    try:
-        skipped: tuple[str, ...] = ()
-        with ThreadPoolExecutor(max_workers=1) as beside:
-            # Trying the renderer takes a second; the numbers are written meanwhile.
-            problem = beside.submit(rendering_problem) if pictures else None
-            _write_data(modes, staging, tell)
-            if problem is not None:
-                tell("trying the renderer")
-                try:
-                    skipped = _draw(modes, staging, problem.result(), tell)
-                except KeyboardInterrupt:
-                    # The numbers may have taken long; they are kept.
-                    _publish(staging, folder)
-                    raise
-        return Written(files=_publish(staging, folder), skipped=skipped)
-    except OSError as error:
-        raise ToolError(f"cannot write in {folder}: {error.strerror}") from error
-    finally:
-        shutil.rmtree(staging, ignore_errors=True)
+        raise ToolError(
+            f"cannot write in {folder}: {error.strerror or error}; what was there is unchanged"
+        ) from error
 
 
 def _write_data(modes: Modes, staging: Path, tell: Callable[[str], None]) -> None:
@@ -138,22 +136,17 @@ def _draw(
     return ()
 
 
-def _publish(staging: Path, folder: Path) -> tuple[Path, ...]:
+def _publish(staging: Path, folder: Path, whole: bool) -> tuple[Path, ...]:
     """Move the finished set to its place; return the paths, numbers first."""
     order = {name: k for k, name in enumerate((*_DATA, SHEET))}
+
+    def is_ours(name: str) -> bool:
+        return name in order or _ANIMATION.fullmatch(name) is not None
+
     names = sorted(
-        (path.name for path in staging.iterdir()), key=lambda n: (order.get(n, len(order)), n)
+        (path.name for path in staging.iterdir() if is_ours(path.name)),
+        key=lambda n: (order.get(n, len(order)), n),
     )
-    for name in names:
-        (staging / name).replace(folder / name)
-    for path in list(folder.iterdir()):
-        ours = path.name in order or _ANIMATION.fullmatch(path.name)
-        if ours and path.name not in names:
-            path.unlink()
+    if not (whole and swap(staging, folder, is_ours)):
+        replace_each(staging, folder, is_ours, last="modes.json")
     return tuple(folder / name for name in names)
-
-
-def _clear_abandoned(folder: Path) -> None:
-    for path in folder.glob(f"{_STAGING}*"):
-        if path.is_dir() and time.time() - path.stat().st_mtime > _ABANDONED:
-            shutil.rmtree(path, ignore_errors=True)
