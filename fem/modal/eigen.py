@@ -6,10 +6,10 @@ random block is multiplied by A again and again; every new block is made
 M-orthogonal to all before it, so no ghost values arise (Grimes, Lewis & Simon,
 "A shifted block Lanczos algorithm ...", SIAM J. Matrix Anal. 15 (1994) 228).
 
-A Krylov space of blocks of b vectors holds at most b copies of a multiple
-eigenvalue. When all wanted modes have converged, fresh random vectors made
-orthogonal to the space therefore probe what it may have missed; what they find
-joins the space.
+A Krylov space that starts from b random vectors holds every copy of an eigenvalue
+of up to b copies, and b of more. Where as many as b of the wanted modes lie close
+together, fresh random vectors made orthogonal to the space therefore probe what
+it may have missed; what they find joins the space.
 """
 
 from __future__ import annotations
@@ -29,6 +29,9 @@ CLUSTER = 2.0 ** (1.0 / 1200.0) - 1.0
 #: Residual that the mode after the last wanted one must reach before its distance
 #: is trusted.
 _LOOSE = 1e-4
+
+#: Modes this close (relative, in lambda) may be copies that the mesh has split.
+_COPIES = 0.01
 
 #: A probe whose theta comes this near to that of the last wanted mode has found
 #: something.
@@ -75,7 +78,7 @@ def lowest_modes(
     sigma: float = 0.0,
     known: np.ndarray | None = None,
     block: int | None = None,
-    tolerance: float = 1e-8,
+    tolerance: float = 1e-7,
     most_steps: int = 80,
 ) -> Pairs:
     """Return the lowest modes, clusters whole.
@@ -118,8 +121,10 @@ def lowest_modes(
         ritz = space.ritz()
         wanted = _wanted(ritz, count, floor, sigma, tolerance, space.exhausted)
         if wanted is not None:
-            above = ritz.theta[wanted - 1] if wanted else floor
-            if not space.widen(_SUSPECT * above):
+            values = sigma + 1.0 / ritz.theta[:wanted]
+            if _most_copies(values) < space.block:
+                return _pairs(space, ritz, wanted, sigma)
+            if not space.widen(_SUSPECT * ritz.theta[wanted - 1]):
                 return _pairs(space, ritz, wanted, sigma)
         elif space.exhausted or space.steps >= most_steps:
             good = _converged(ritz, tolerance)
@@ -131,7 +136,16 @@ def lowest_modes(
 
 
 def _block(count: int | None) -> int:
+    # Solving for 12 right sides takes about twice as long as for one.
     return 12 if count is None else int(np.clip(count // 2, 8, 16))
+
+
+def _most_copies(values: np.ndarray) -> int:
+    """Return the largest number of values (ascending) that lie within a narrow band."""
+    if len(values) == 0:
+        return 0
+    inside = np.searchsorted(values, values * (1.0 + _COPIES), side="right")
+    return int((inside - np.arange(len(values))).max())
 
 
 def _converged(ritz: Ritz, tolerance: float) -> int:

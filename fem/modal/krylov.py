@@ -72,6 +72,7 @@ class Space:
         known: np.ndarray | None,
         block: int,
     ) -> None:
+        self.block = block
         self._solve, self._apply_mass, self._draw = solve, apply_mass, draw
         self._basis = _Columns(block)
         self._projected = np.zeros((0, 0))

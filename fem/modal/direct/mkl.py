@@ -46,6 +46,10 @@ def _paths() -> list[Path]:
 
 
 def _load() -> ctypes.CDLL:
+    # Idle threads of the library's pool must sleep at once: by default they spin for
+    # 200 ms and take the cores from what runs between two solves. The pool reads
+    # this when it is loaded.
+    os.environ.setdefault("KMP_BLOCKTIME", "0")
     for path in _paths():
         if sys.platform == "win32":
             os.add_dll_directory(str(path.parent))
