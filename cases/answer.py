@@ -23,6 +23,7 @@ class Answer:
     lines : sentences below
     warnings : sentences for stderr
     spare : headers of columns that a narrow terminal goes without, the first to go first
+    code : exit code, 0 unless the answer itself says that something fails
     """
 
     document: Mapping[str, Any]
@@ -32,6 +33,7 @@ class Answer:
     lines: tuple[str, ...] = ()
     warnings: tuple[str, ...] = ()
     spare: tuple[str, ...] = ()
+    code: int = 0
 
 
 def error_document(error: ModewrightError) -> dict[str, Any]:

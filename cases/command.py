@@ -171,6 +171,23 @@ def sweep(
     )
 
 
+@app.command
+def check(
+    *,
+    full: Annotated[
+        bool, Parameter(negative="", help="All checks, not only those of the short run.")
+    ] = False,
+    out: Annotated[
+        Path | None, Parameter(help="Write check.json and check.md into this folder.")
+    ] = None,
+    json: Json = False,
+) -> int:
+    """Solve parts whose frequencies are published and compare; ends 1 if one fails."""
+    from .verbs.check import answer_check
+
+    return _give(lambda progress: answer_check(full=full, out=out, progress=progress), json)
+
+
 def main(tokens: Sequence[str] | None = None) -> int:
     """Run the command line and return its exit code.
 
@@ -182,7 +199,7 @@ def main(tokens: Sequence[str] | None = None) -> int:
     Returns
     -------
     int
-        0 done, 2 the input is wrong, 1 it could not be done.
+        0 done, 2 the input is wrong, 1 it could not be done, or a check fails.
     """
     tokens = list(sys.argv[1:] if tokens is None else tokens)
     as_json = "--json" in tokens
@@ -210,7 +227,7 @@ def _give(work: Callable[[Callable[[str], None]], Answer], as_json: bool) -> int
     with watching() as progress:
         answer = work(progress)
     give(answer, as_json=as_json)
-    return 0
+    return answer.code
 
 
 def _complain(error: ModewrightError, as_json: bool) -> int:

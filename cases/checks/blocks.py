@@ -16,8 +16,8 @@ _SHEAR = sqrt(_MODULUS / (2.0 * (1.0 + _NU)) / _DENSITY)
 _SIDE = 0.1
 _RADIUS = 0.05
 
-#: Points of a half circle from pole to pole; a spline through them is round to 1e-6.
-_POINTS = 25
+#: Points of a half circle from pole to pole; a spline through them is round to 1e-5.
+_POINTS = 13
 _HALF_CIRCLE = [
     [0.0, 100.0],
     *(
@@ -43,18 +43,18 @@ BLOCKS = (
             "Free cube",
             {"family": "bar", "length": 100.0, "width": 100.0, "thickness": 100.0},
             _STEEL,
-            modes=17,
-            size=11.0,
+            modes=14,
+            size=13.0,
         ),
         expected=spectrum(
-            (2.85605, 2), (3.84597, 3), (3.91125, 3), (pi * sqrt(2.0), 3), (4.57279, 3), (4.79256, 3)
+            (2.85605, 2), (3.84597, 3), (3.91125, 3), (pi * sqrt(2.0), 3), (4.57279, 3)
         ),
         note="Modes 9-11 are Lame's plane shear, pi sqrt 2 exactly, whatever Poisson's ratio is.",
     ),
     Check(
         title="Free solid sphere",
-        source="Lamb, Proc. London Math. Soc. 13 (1882) 189; Sato & Usami, Geophys. Mag. 31 (1962); "
-        "roots recomputed",
+        source="Lamb, Proc. London Math. Soc. 13 (1882) 189; Sato & Usami, Geophys. Mag. 31 "
+        "(1962); roots recomputed",
         basis=Basis.EXACT,
         tolerance=0.05,
         unit=_SHEAR / (2.0 * pi * _RADIUS),
@@ -64,13 +64,19 @@ BLOCKS = (
             {"family": "revolved", "profile": _HALF_CIRCLE},
             _STEEL,
             modes=28,
-            size=11.0,
+            size=12.0,
         ),
         expected=spectrum(
-            (2.501133, 5), (2.646217, 5), (3.529987, 3), (3.864700, 7), (3.937401, 7), (4.995514, 1)
+            (2.501133, 5),
+            (2.646217, 5),
+            (3.529987, 3),
+            (3.864700, 7),
+            (3.937401, 7),
+            (4.995514, 1),
         ),
-        note="In order: torsional n = 2, spheroidal n = 2 and 1, torsional n = 3, spheroidal n = 3, "
-        "breathing.",
+        quick=False,
+        note="In order: torsional n = 2, spheroidal n = 2 and 1, torsional n = 3, spheroidal "
+        "n = 3, breathing.",
     ),
     Check(
         title="Free rectangular bar, aluminium",
@@ -117,7 +123,7 @@ BLOCKS = (
                 "density": 705.6,
             },
             modes=10,
-            size=7.0,
+            size=6.5,
         ),
         expected=spectrum(
             (980.81, 1),

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from enum import Enum
 from time import perf_counter
 
-from ...fem.modal.modes import Modes
+from ...fem.modal.modes import Mode, Modes
 from ...fem.modal.naming.find import find_mode
 from ...fem.modal.pitch import cents
 from ...fem.modal.solve import solve
@@ -36,6 +36,8 @@ class Outcome:
     expected : Expected
     expected_hz, printed_hz : Hz; printed is None where the source prints the expected value
     got_hz : Hz, of the mode farthest off; None if there is no such mode
+    mesh_error_cents : what the mesh's own error of that mode was taken to be, already
+        taken off; None where none is known
     percent, cents : got against expected; positive is sharp
     printed_percent : got against printed
     verdict : Verdict
@@ -45,6 +47,7 @@ class Outcome:
     expected_hz: float
     printed_hz: float | None
     got_hz: float | None
+    mesh_error_cents: float | None
     percent: float | None
     cents: float | None
     printed_percent: float | None
@@ -59,16 +62,16 @@ class Result:
     ----------
     check : Check
     outcomes : one for each expected value
+    seconds : to solve the part, next to 0 if another check had solved it already
     unknowns, size_mm : of the mesh; None if the part was not solved
-    seconds : to solve the part, 0 if another check had solved it already
     trouble : why the part could not be solved, or ""
     """
 
     check: Check
     outcomes: tuple[Outcome, ...]
-    unknowns: int | None
-    size_mm: float | None
     seconds: float
+    unknowns: int | None = None
+    size_mm: float | None = None
     trouble: str = ""
 
     @property
@@ -77,9 +80,7 @@ class Result:
         return any(outcome.verdict is Verdict.FAILS for outcome in self.outcomes)
 
 
-def run_checks(
-    checks: Sequence[Check], *, progress: Progress | None = None
-) -> tuple[Result, ...]:
+def run_checks(checks: Sequence[Check], *, progress: Progress | None = None) -> tuple[Result, ...]:
     """Return the results of all checks, in order; a part that several share is solved once.
 
     Raises
@@ -97,7 +98,9 @@ def run_checks(
             case = build_case(check.document)
             head = f"{number} of {len(checks)}, {check.title.lower()}"
             try:
-                solved[key] = solve(case, progress=lambda words, head=head: tell(f"{head}: {words}"))
+                solved[key] = solve(
+                    case, progress=lambda words, head=head: tell(f"{head}: {words}")
+                )
             except WorkError as error:
                 solved[key] = error
         results.append(_result(check, solved[key], perf_counter() - start))
@@ -105,41 +108,43 @@ def run_checks(
 
 
 def _result(check: Check, modes: Modes | WorkError, seconds: float) -> Result:
-    failed = isinstance(modes, WorkError)
+    if isinstance(modes, WorkError):
+        outcomes = tuple(_outcome(check, expected, ()) for expected in check.expected)
+        return Result(check=check, outcomes=outcomes, seconds=seconds, trouble=str(modes))
     return Result(
         check=check,
         outcomes=tuple(
-            _outcome(check, expected, () if failed else _found(expected, modes))
-            for expected in check.expected
+            _outcome(check, expected, _found(expected, modes)) for expected in check.expected
         ),
-        unknowns=None if failed else modes.mesh_facts.unknowns,
-        size_mm=None if failed else modes.mesh_facts.size_mm,
+        unknowns=modes.mesh_facts.unknowns,
+        size_mm=modes.mesh_facts.size_mm,
         seconds=seconds,
-        trouble=str(modes) if failed else "",
     )
 
 
-def _found(expected: Expected, modes: Modes) -> Sequence[float]:
-    """Return the frequencies an expected value speaks of, Hz; none if there is no such mode."""
+def _found(expected: Expected, modes: Modes) -> Sequence[Mode]:
+    """Return the modes an expected value speaks of; none if one of them is not there."""
     if expected.mode is None:
         chosen = modes.modes[expected.first - 1 : expected.last]
-        return [mode.frequency_hz for mode in chosen] if len(modes) >= expected.last else []
+        return chosen if len(modes) >= expected.last else ()
     try:
-        return [modes.modes[find_mode(expected.mode, modes.names)].frequency_hz]
+        return (modes.modes[find_mode(expected.mode, modes.names)],)
     except InputError:
-        return []
+        return ()
 
 
-def _outcome(check: Check, expected: Expected, found: Sequence[float]) -> Outcome:
+def _outcome(check: Check, expected: Expected, found: Sequence[Mode]) -> Outcome:
     wanted = expected.value * check.unit
     printed = None if expected.printed is None else expected.printed * check.unit
-    got = max(found, key=lambda hz: abs(hz / wanted - 1.0)) if found else None
+    worst = max(found, key=lambda mode: abs(mode.frequency_hz / wanted - 1.0), default=None)
+    got = None if worst is None else worst.frequency_hz
     percent = None if got is None else 100.0 * (got / wanted - 1.0)
     return Outcome(
         expected=expected,
         expected_hz=wanted,
         printed_hz=printed,
         got_hz=got,
+        mesh_error_cents=None if worst is None else worst.mesh_error_cents,
         percent=percent,
         cents=None if got is None else cents(got, wanted),
         printed_percent=None if got is None or not printed else 100.0 * (got / printed - 1.0),
