@@ -87,9 +87,12 @@ def nodal_lines(surface: Surface, motion: np.ndarray) -> Segments:
     Notes
     -----
     Parts of the surface that hardly move along their normal, such as the narrow
-    sides of a bar that bends flatwise, and held faces have no lines.
+    sides of a bar that bends flatwise, and held faces have no lines. Nor have places
+    where a round surface only turns its normal through a right angle to a motion that
+    stays the same, such as the flanks of a round bar that bends.
     """
-    normal = np.einsum("ij,ij->i", motion, point_normals(surface.points, surface.triangles))
+    normals = point_normals(surface.points, surface.triangles)
+    normal = np.einsum("ij,ij->i", motion, normals)
     size = np.linalg.norm(motion, axis=1)
     top = size.max(initial=0.0)
     if top == 0:
@@ -104,4 +107,12 @@ def nodal_lines(surface: Surface, motion: np.ndarray) -> Segments:
     ends = lines.places(surface.points).reshape(-1, 2, 3)
     length = np.linalg.norm(ends[:, 1] - ends[:, 0], axis=1)
     speck = 1e-6 * np.ptp(surface.points, axis=0).max()
-    return lines.only(~held & (length > speck))
+    corners = surface.triangles[lines.triangles]
+    changes = _range(motion[corners], normals[corners].mean(axis=1))
+    turns = _range(normals[corners], motion[corners].mean(axis=1))
+    return lines.only(~held & (length > speck) & (changes >= turns))
+
+
+def _range(vectors: np.ndarray, along: np.ndarray) -> np.ndarray:
+    """Return how much vectors (t, 3, 3) at the corners of triangles differ along `along` (t, 3)."""
+    return np.ptp(np.einsum("tci,ti->tc", vectors, along), axis=1)
