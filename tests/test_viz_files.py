@@ -16,6 +16,7 @@ import meshio
 import numpy as np
 import pytest
 import pyvista
+import scipy.sparse as sparse
 from modewright.fem.modal.case import Case
 from modewright.fem.modal.element import cell_gradients, cell_quadrature
 from modewright.fem.modal.material import Material
@@ -27,7 +28,7 @@ from modewright.viz import results
 from modewright.viz.contour import nodal_lines, zero_lines
 from modewright.viz.document import document_text, modes_document
 from modewright.viz.results import write_results
-from modewright.viz.surface import outer_surface
+from modewright.viz.surface import Surface, outer_surface
 from modewright.viz.table import modes_csv, modes_table, table_csv
 from modewright.viz.view import choose_view, exaggeration, scale_bar_length
 
@@ -312,6 +313,33 @@ def test_nodal_line_of_the_second_cantilever_mode(modes):
     assert np.linalg.norm(ends[1::2] - ends[::2], axis=1).sum() == pytest.approx(2 * WIDTH)
     first = nodal_lines(surface, surface.values(modes.shapes[0]))
     assert len(first.triangles) == 0
+
+
+def test_a_bending_round_bar_has_nodal_lines_round_it_only():
+    """Its flanks, where the normal lies across the motion, move as much as the rest."""
+    turns, length, radius = 24, 1.0, 0.05
+    x = np.linspace(0.0, length, 81)
+    angle = 2 * np.pi * (np.arange(turns) + 0.3) / turns
+    ring = np.column_stack([np.zeros(turns), radius * np.cos(angle), radius * np.sin(angle)])
+    points = (ring + x[:, None, None] * [1.0, 0.0, 0.0]).reshape(-1, 3)
+    a = np.arange(80)[:, None] * turns + np.arange(turns)
+    b = np.arange(80)[:, None] * turns + (np.arange(turns) + 1) % turns
+    quads = np.stack([a, b, b + turns, a + turns], axis=-1).reshape(-1, 4)
+    triangles = np.vstack([quads[:, [0, 2, 1]], quads[:, [0, 3, 2]]])
+    none = np.zeros((0, 2), int)
+    surface = Surface(
+        points=points,
+        triangles=triangles,
+        weights=sparse.eye_array(len(points), format="csr"),
+        edges=none,
+        edge_triangles=none,
+        patches=np.zeros(len(points), int),
+    )
+    motion = np.zeros_like(points)
+    motion[:, 2] = np.cos(2 * np.pi * points[:, 0])
+    ends = nodal_lines(surface, motion).places(points)
+    assert len(ends) > 40
+    assert np.abs(np.abs(ends[:, 0] - 0.5) - 0.25).max() < 0.02
 
 
 def test_motion_is_drawn_large_but_not_torn_and_fits_the_view(modes):
