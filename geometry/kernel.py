@@ -19,7 +19,8 @@ from .ligaments import Spot, thin_places
 from .ligaments import spots as spots_over
 from .mesh import Mesh
 from .quality import evenness, facet_areas, straighten, volumes
-from .sizing import MOST, Extent, default_size, unknowns
+from .size_field import SizeField
+from .sizing import FEWEST, MOST, USUAL, Extent, default_size, unknowns
 from .solid import Patch, Solid
 from .words import nearest
 
@@ -50,11 +51,22 @@ _TOO_MANY = 6e6
 
 @dataclass(frozen=True, kw_only=True, slots=True)
 class Request:
-    """What to mesh: a solid, an element size in mm (or None), patches to imprint."""
+    """What to mesh.
+
+    Attributes
+    ----------
+    solid : Solid
+    size : element size, mm; None: `sizing.default_size`
+    patches : to imprint
+    coarse : without a size, a coarse mesh to begin a refinement with
+    local : sizes from place to place instead of one
+    """
 
     solid: Solid
     size: float | None = None
     patches: tuple[Patch, ...] = ()
+    coarse: bool = False
+    local: SizeField | None = None
 
 
 @dataclass(frozen=True, eq=False, kw_only=True, slots=True)
@@ -92,7 +104,7 @@ def mesh(request: Request) -> Mesh:
     with _session():
         part = _build(request.solid, request.patches)
         _check(part, request.solid)
-        size = request.size or default_size(request.solid.thin, part.extent)
+        size = _largest_size(request, part.extent)
         about = unknowns(part.extent, size)
         if about > _TOO_MANY:
             raise InputError(
@@ -101,7 +113,8 @@ def mesh(request: Request) -> Mesh:
                 value=size,
                 allowed=f"about {default_size(request.solid.thin, part.extent):g} mm is usual here",
             )
-        found = _meshed(part, size, np.inf if request.size else 1.5 * MOST)
+        most = USUAL if request.coarse else 1.5 * MOST
+        found = _meshed(part, size, np.inf if request.size else most, request.local)
         return _named(found, part, request, size)
 
 
@@ -115,6 +128,15 @@ def _session() -> Iterator[None]:
         yield
     finally:
         gmsh.finalize()
+
+
+def _largest_size(request: Request, extent: Extent) -> float:
+    if request.local is not None:
+        return float(request.local.sizes.max())
+    if request.size is not None:
+        return request.size
+    usual = FEWEST if request.coarse else USUAL
+    return default_size(request.solid.thin, extent, usual)
 
 
 def _build(solid: Solid, patches: tuple[Patch, ...]) -> Part:
@@ -215,7 +237,7 @@ def _agree(what: str, got: float, wanted: float, tolerance: float, unit: str) ->
         raise MeshError(f"the {what} came out as {got:.9g} {unit} instead of {wanted:.9g}")
 
 
-def _meshed(part: Part, size: float, most: float) -> arrays.Arrays:
+def _meshed(part: Part, size: float, most: float, local: SizeField | None) -> arrays.Arrays:
     """Mesh until the cells are even, thin places fine enough and the surface true.
 
     `most` is a number of unknowns above which round faces are meshed more coarsely.
@@ -223,7 +245,7 @@ def _meshed(part: Part, size: float, most: float) -> arrays.Arrays:
     spots: list[Spot] = []
     per_turn = meshing.PER_TURN
     for attempt in range(_ATTEMPTS):
-        meshing.generate(gmsh, size, per_turn=per_turn, spots=spots)
+        meshing.generate(gmsh, size, per_turn=per_turn, spots=spots, local=local)
         found = _curved(arrays.read(gmsh, part.volume, sorted(part.names)))
         if attempt == 0:
             if 3 * len(found.points) > most:
@@ -293,6 +315,7 @@ def _named(found: arrays.Arrays, part: Part, request: Request, size: float) -> M
         faces=faces,
         size=size / 1e3,
         volume=part.extent.volume / 1e9,
+        area=part.extent.area / 1e6,
     )
 
 

@@ -33,9 +33,11 @@ class Mesh:
         Indices into `facets` of each named face. Every facet has a name; a
         patch's facets belong to the patch and to the face under it.
     size : float, m
-        The global element size asked for.
+        The element size asked for; the largest where it differs from place to place.
     volume : float, m3
         Volume of the exact geometry (the CAD body), or of the mesh where there is none.
+    area : float, m2
+        Surface of the exact geometry, 0 where there is none.
     """
 
     points: np.ndarray
@@ -44,6 +46,7 @@ class Mesh:
     faces: Mapping[str, np.ndarray] = field(default_factory=dict)
     size: float = 0.0
     volume: float = 0.0
+    area: float = 0.0
 
     def facet_nodes(self, face: str) -> np.ndarray:
         """Return (k, 6) int: the nodes of the facets of a named face."""

@@ -30,11 +30,11 @@ def unknowns(extent: Extent, size: float) -> float:
     return 3.0 * (nodes + 35.0 * extent.length / size)
 
 
-def default_size(thin: float, extent: Extent) -> float:
+def default_size(thin: float, extent: Extent, usual: float = USUAL) -> float:
     """Return the element size, mm.
 
     About two elements through the thinnest section where that stays within
-    `USUAL` unknowns; down to two thirds of an element where it does not; coarser
+    `usual` unknowns; down to two thirds of an element where it does not; coarser
     still only where `MOST` unknowns would be passed.
 
     Parameters
@@ -42,11 +42,12 @@ def default_size(thin: float, extent: Extent) -> float:
     thin : float
         Smallest wall, web or thickness, mm; 0 where it is not known.
     extent : Extent
+    usual : unknowns to stay within, `FEWEST` or more
     """
     if thin <= 0:
         thin = 2.0 * extent.volume / extent.area
     fine, coarse = 0.45 * thin, 1.5 * thin
-    size = min(max(fine, _size_for(extent, USUAL)), coarse)
+    size = min(max(fine, _size_for(extent, usual)), coarse)
     size = max(size, _size_for(extent, MOST))
     return float(f"{min(size, _size_for(extent, FEWEST)):.3g}")
 

@@ -11,6 +11,7 @@ from __future__ import annotations
 import numpy as np
 
 from ...geometry.mesh import FACET_EDGES, Mesh
+from .element import facet_gradients
 
 #: Interior angle in degrees -> exponent a of the displacement, both faces free
 #: (Williams, J. Appl. Mech. 19 (1952) 526, symmetric root).
@@ -30,9 +31,23 @@ _CLAMPED_FREE = ((55.0, 1.0), (90.0, 0.711), (120.0, 0.62), (180.0, 0.5), (270.0
 #: The same, both faces clamped, nu = 0.3 (Williams; from memory).
 _CLAMPED = ((200.0, 1.0), (270.0, 0.595), (360.0, 0.5))
 
+#: Parameters of the mid-side nodes of a facet.
+_MIDDLES = np.array([[0.5, 0.0], [0.5, 0.5], [0.0, 0.5]])
+
 
 def saturation(mesh: Mesh, allowed: np.ndarray | None) -> np.ndarray:
     """Return (c,) factors from the third-order estimate to the whole error of each cell.
+
+    Parameters
+    ----------
+    mesh, allowed : see `exponents`
+    """
+    exponent = exponents(mesh, allowed)
+    return np.where(exponent < 1.0, 1.0 / (1.0 - (2.0 / 3.0) ** (4.0 * exponent)), 1.0)
+
+
+def exponents(mesh: Mesh, allowed: np.ndarray | None) -> np.ndarray:
+    """Return (c,) the smallest exponent of the edges that each cell touches; 1: none is singular.
 
     Parameters
     ----------
@@ -59,14 +74,17 @@ def saturation(mesh: Mesh, allowed: np.ndarray | None) -> np.ndarray:
     for where, table, times in rows:
         degrees, exponents = np.array(table).T
         exponent[where] = np.interp(times * angle[where], degrees, exponents)
-    factor = np.where(exponent < 1.0, 1.0 / (1.0 - (2.0 / 3.0) ** (4.0 * exponent)), 1.0)
     at_node = np.ones(len(mesh.points))
-    np.maximum.at(at_node, edge_nodes.ravel(), np.repeat(factor, 2))
-    return at_node[mesh.cells[:, :4]].max(axis=1)
+    np.minimum.at(at_node, edge_nodes.ravel(), np.repeat(exponent, 2))
+    return at_node[mesh.cells[:, :4]].min(axis=1)
 
 
 def _boundary_edges(mesh: Mesh) -> tuple[np.ndarray, np.ndarray, np.ndarray, np.ndarray]:
-    """Return edges (e, 2), interior angles (e,) in degrees, and the two facets of each."""
+    """Return edges (e, 2), interior angles (e,) in degrees, and the two facets of each.
+
+    The angle is that of the curved facets in the middle of the edge: a round face has
+    no edges, however coarsely it is meshed.
+    """
     mids = mesh.facets[:, 3:].ravel()
     order = np.argsort(mids, kind="stable")
     facet, side = np.divmod(order, 3)
@@ -75,10 +93,12 @@ def _boundary_edges(mesh: Mesh) -> tuple[np.ndarray, np.ndarray, np.ndarray, np.
     pairs = np.array(FACET_EDGES)
     ends = np.take_along_axis(mesh.facets[one], pairs[side[::2]], axis=1)
     opposite = mesh.facets[two, (side[1::2] + 2) % 3]
-    corners = mesh.points[mesh.facets[:, :3]]
-    normal = np.cross(corners[:, 1] - corners[:, 0], corners[:, 2] - corners[:, 0])
-    normal /= np.linalg.norm(normal, axis=1)[:, None]
-    cosine = np.einsum("ei,ei->e", normal[one], normal[two])
+    slopes = facet_gradients(_MIDDLES)
+    tangents = np.einsum("qad,fai->fqid", slopes, mesh.points[mesh.facets])
+    normals = np.cross(tangents[..., 0], tangents[..., 1])
+    normals /= np.linalg.norm(normals, axis=2)[..., None]
+    normal = normals[one, side[::2]]
+    cosine = np.einsum("ei,ei->e", normal, normals[two, side[1::2]])
     bend = np.degrees(np.arccos(np.clip(cosine, -1.0, 1.0)))
-    height = np.einsum("ei,ei->e", mesh.points[opposite] - mesh.points[ends[:, 0]], normal[one])
+    height = np.einsum("ei,ei->e", mesh.points[opposite] - mesh.points[ends[:, 0]], normal)
     return ends, np.where(height > 0.0, 180.0 + bend, 180.0 - bend), one, two

@@ -117,7 +117,12 @@ def build_system(case: Case, mesh: Mesh, pattern: Pattern | None = None) -> Syst
     material = case.material.at(rise)
     longer = 1.0 + (material.expansion or 0.0) * rise
     if longer != 1.0:
-        mesh = replace(mesh, points=mesh.points * longer, volume=mesh.volume * longer**3)
+        mesh = replace(
+            mesh,
+            points=mesh.points * longer,
+            volume=mesh.volume * longer**3,
+            area=mesh.area * longer**2,
+        )
     bare = assemble(mesh, material.stiffness(), material.density, pattern)
     body_mass = float(symmetric(bare.pattern, bare.masses).sum())
     added = _attach(case.attached_masses, mesh, bare)

@@ -5,8 +5,11 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import Any
 
+import numpy as np
+
 from ..errors import MeshError
 from ..ligaments import Spot
+from ..size_field import SizeField
 
 #: Cells per full turn of a curved face.
 PER_TURN = 12
@@ -39,16 +42,22 @@ _OPTIONS = {
 
 
 def generate(
-    cad: Any, size: float, *, per_turn: int = PER_TURN, spots: Sequence[Spot] = ()
+    cad: Any,
+    size: float,
+    *,
+    per_turn: int = PER_TURN,
+    spots: Sequence[Spot] = (),
+    local: SizeField | None = None,
 ) -> None:
     """Mesh the current model's volume with curved second-order tetrahedra.
 
     Parameters
     ----------
     cad : kernel handle
-    size : element size, mm
+    size : largest element size, mm
     per_turn : cells per full turn of curved faces
     spots : balls with cells of their own size
+    local : sizes from place to place
 
     Raises
     ------
@@ -58,10 +67,11 @@ def generate(
     for name, value in _OPTIONS.items():
         cad.option.setNumber(name, value)
     cad.option.setNumber("Mesh.MeshSizeMax", size)
-    cad.option.setNumber("Mesh.MeshSizeMin", size * _SMALLEST)
+    smallest = size if local is None else min(size, float(local.sizes.min()))
+    cad.option.setNumber("Mesh.MeshSizeMin", smallest * _SMALLEST)
     cad.option.setNumber("Mesh.MeshSizeFromCurvature", per_turn)
     cad.model.mesh.clear()
-    _refine(cad, size, spots)
+    _refine(cad, size, spots, local)
     try:
         cad.model.mesh.generate(3)
         cad.model.mesh.setOrder(2)
@@ -72,12 +82,14 @@ def generate(
         ) from None
 
 
-def _refine(cad: Any, size: float, spots: Sequence[Spot]) -> None:
-    """Set local sizes: the finest of what short curves and spots ask for."""
+def _refine(cad: Any, size: float, spots: Sequence[Spot], local: SizeField | None) -> None:
+    """Set local sizes: the finest of what short curves, spots and the size field ask for."""
     field = cad.model.mesh.field
     for tag in field.list().tolist():
         field.remove(tag)
     grades = [*_short_curves(cad, size), *(_ball(cad, spot, size) for spot in spots)]
+    if local is not None:
+        grades.append(_interpolated(cad, local))
     if grades:
         finest = field.add("Min")
         field.setNumbers(finest, "FieldsList", grades)
@@ -97,6 +109,17 @@ def _ball(cad: Any, spot: Spot, size: float) -> int:
         VIn=spot.size,
         VOut=size,
     )
+
+
+def _interpolated(cad: Any, local: SizeField) -> int:
+    """Return a field that is linear in each tetrahedron of a size field."""
+    for tag in cad.view.getTags():
+        cad.view.remove(int(tag))
+    corners = local.points[local.cells].transpose(0, 2, 1).reshape(-1, 12)
+    rows = np.hstack([corners, local.sizes[local.cells]])
+    view = cad.view.add("sizes")
+    cad.view.addListData(view, "SS", len(rows), rows.ravel())
+    return _field(cad, "PostView", ViewTag=view, UseClosest=1)
 
 
 def _short_curves(cad: Any, size: float) -> list[int]:
