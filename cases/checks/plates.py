@@ -168,14 +168,14 @@ PLATES = (
         note="The published values, upper bounds of a short series, are up to 1 % high.",
     ),
     Check(
-        title="Clamped thin square plate",
+        title="Thin square plate, clamped along one side",
         source="Barton, J. Appl. Mech. 18 (1951) 129; recomputed",
         basis=Basis.PLATE_THEORY,
         tolerance=0.5,
         unit=_plate_unit(100.0, 1.0, 0.3),
         measure="omega a^2 sqrt(rho h/D)",
         document=document(
-            "Clamped thin square plate",
+            "Thin square plate, clamped along one side",
             {"family": "plate", "length": 100.0, "width": 100.0, "thickness": 1.0},
             _STEEL,
             modes=5,
@@ -191,7 +191,7 @@ PLATES = (
             printed=(3.492, 8.525, 21.43, 27.33, 31.11),
         ),
         quick=False,
-        note="One side is clamped. The published values are up to 0.7 % high.",
+        note="The published values are up to 0.7 % high.",
     ),
     Check(
         title="Free thin disc",

@@ -8,11 +8,21 @@ from typing import Any
 from ...viz.table import Table
 from .run import Outcome, Result, Verdict
 
-HEADERS = ("check", "source", "mode", "expected Hz", "got Hz", "%", "cents", "allowed %", "verdict")
-_NUMERIC = (False, False, False, True, True, True, True, True, False)
+#: Headers and whether the column holds numbers.
+_COLUMNS = {
+    "check": False,
+    "mode": False,
+    "printed Hz": True,
+    "expected Hz": True,
+    "got Hz": True,
+    "%": True,
+    "cents": True,
+    "allowed %": True,
+    "verdict": False,
+}
 
 #: Columns that a narrow terminal goes without, the first to go first.
-SPARE = ("source", "allowed %", "cents", "got Hz")
+SPARE = ("printed Hz", "allowed %", "cents")
 
 
 def passed(results: Sequence[Result]) -> bool:
@@ -33,22 +43,29 @@ def summary(results: Sequence[Result]) -> str:
 
 
 def check_table(results: Sequence[Result]) -> Table:
-    """Return one row for each value; title and source stand once."""
+    """Return one row for each value; the title stands once.
+
+    ``printed Hz`` is filled where the publication is off or rounds harder than
+    the value that decides.
+    """
     rows = []
     for result in results:
         for i, outcome in enumerate(result.outcomes):
-            head = ("", "") if i else (result.check.title, result.check.source)
-            rows.append((*head, *_cells(result, outcome)))
-    return Table(headers=HEADERS, rows=tuple(rows), numeric=_NUMERIC)
+            mode, *numbers, verdict = _cells(outcome)
+            allowed = f"{result.check.tolerance:g}" if result.check.decides else ""
+            title = "" if i else result.check.title
+            rows.append((title, mode, *numbers, allowed, verdict))
+    return Table(headers=tuple(_COLUMNS), rows=tuple(rows), numeric=tuple(_COLUMNS.values()))
 
 
 def remarks(results: Sequence[Result]) -> tuple[str, ...]:
-    """Return what must be known beside the numbers, a sentence or two for each check."""
+    """Return source, basis and what must be known beside the numbers, one line a check."""
     lines = []
     for result in results:
-        words = " ".join(part for part in (_trouble(result), result.check.note) if part)
-        if words:
-            lines.append(f"{result.check.title}: {words}")
+        check = result.check
+        rest = " ".join(part for part in (_trouble(result), check.note) if part)
+        line = f"{check.title}: {check.source} [{check.basis.value}]."
+        lines.append(f"{line} {rest}" if rest else line)
     return tuple(lines)
 
 
@@ -74,17 +91,9 @@ def check_page(results: Sequence[Result]) -> str:
         if result.unknowns is not None:
             parts += [f"Mesh: {result.unknowns} unknowns, cells of {result.size_mm:.3g} mm.", ""]
         parts += [part + "\n" for part in (_trouble(result), check.note) if part]
-        printed = any(outcome.printed_hz is not None for outcome in result.outcomes)
-        headers = ["mode", "expected Hz", "got Hz", "%", "cents", "verdict"]
-        if printed:
-            headers[2:2] = ["printed Hz"]
-        parts += [_line(headers), _line(["---"] + ["---:"] * (len(headers) - 2) + ["---"])]
-        for outcome in result.outcomes:
-            mode, expected, *rest = _cells(result, outcome)
-            del rest[3]
-            if printed:
-                rest.insert(0, _hz(outcome.printed_hz))
-            parts.append(_line([mode, expected, *rest]))
+        headers = ["mode", "printed Hz", "expected Hz", "got Hz", "%", "cents", "verdict"]
+        parts += [_line(headers), _line(["---", *["---:"] * 5, "---"])]
+        parts += [_line(_cells(outcome)) for outcome in result.outcomes]
         parts.append("")
     return "\n".join(parts)
 
@@ -97,15 +106,15 @@ def _trouble(result: Result) -> str:
     return f"Could not be solved: {result.trouble}." if result.trouble else ""
 
 
-def _cells(result: Result, outcome: Outcome) -> tuple[str, ...]:
-    """Return mode, expected, got, %, cents, allowed, verdict."""
+def _cells(outcome: Outcome) -> tuple[str, ...]:
+    """Return mode, printed, expected, got, %, cents, verdict."""
     return (
         outcome.expected.label,
+        _hz(outcome.printed_hz),
         _hz(outcome.expected_hz),
         _hz(outcome.got_hz) or "no such mode",
         _signed(outcome.percent, 3),
         _signed(outcome.cents, 2),
-        f"{result.check.tolerance:g}" if result.check.decides else "",
         outcome.verdict.value,
     )
 
