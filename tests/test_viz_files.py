@@ -318,12 +318,12 @@ def test_nodal_line_of_the_second_cantilever_mode(modes):
 def test_a_bending_round_bar_has_nodal_lines_round_it_only():
     """Its flanks, where the normal lies across the motion, move as much as the rest."""
     turns, length, radius = 24, 1.0, 0.05
-    x = np.linspace(0.0, length, 81)
+    x = np.linspace(0.0, length, 84)
     angle = 2 * np.pi * (np.arange(turns) + 0.3) / turns
     ring = np.column_stack([np.zeros(turns), radius * np.cos(angle), radius * np.sin(angle)])
     points = (ring + x[:, None, None] * [1.0, 0.0, 0.0]).reshape(-1, 3)
-    a = np.arange(80)[:, None] * turns + np.arange(turns)
-    b = np.arange(80)[:, None] * turns + (np.arange(turns) + 1) % turns
+    a = np.arange(83)[:, None] * turns + np.arange(turns)
+    b = np.arange(83)[:, None] * turns + (np.arange(turns) + 1) % turns
     quads = np.stack([a, b, b + turns, a + turns], axis=-1).reshape(-1, 4)
     triangles = np.vstack([quads[:, [0, 2, 1]], quads[:, [0, 3, 2]]])
     none = np.zeros((0, 2), int)
