@@ -20,6 +20,7 @@ class Cholmod:
     """A Cholesky factorisation; see `factor.Factor`."""
 
     name = "CHOLMOD"
+    counts = False
     negative_pivots: int | None = None
 
     def __init__(self, upper: Upper) -> None:

@@ -29,11 +29,13 @@ class Factor(Protocol):
     Attributes
     ----------
     name : what made it, for people
+    counts : whether the library tells `negative_pivots` of indefinite matrices
     negative_pivots : number of negative pivots, that is of negative eigenvalues of
         the matrix; None where the method cannot tell
     """
 
     name: str
+    counts: bool
     negative_pivots: int | None
 
     def solve(self, right: np.ndarray) -> np.ndarray:

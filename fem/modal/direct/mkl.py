@@ -13,6 +13,7 @@ import numpy as np
 import scipy.sparse as sp
 
 from ....geometry.errors import SolveError
+from ..memory import refuse_beyond_memory
 from .triangle import Upper
 
 # Phases of the solver.
@@ -26,6 +27,8 @@ _POSITIVE, _INDEFINITE = 2, -2
 _OWN_VALUES, _ORDERING, _REFINEMENT, _PERTURBATION = 0, 1, 7, 9
 _SCALING, _MATCHING, _COUNT_FACTOR, _COUNT_FLOPS = 10, 12, 17, 18
 _NEGATIVE, _ZERO_BASED, _BLOCK = 22, 34, 36
+# Results of the analysis, kB: what of it stays, and the factor to come.
+_KEPT, _FACTOR = 15, 16
 
 _OVERFLOW, _NO_MEMORY, _ZERO_PIVOT = -8, -2, -4
 
@@ -75,6 +78,7 @@ class Pardiso:
     """A Cholesky or LDL^T factorisation; see `factor.Factor`."""
 
     name = "MKL PARDISO"
+    counts = True
 
     def __init__(self, upper: Upper, positive: bool, wide: bool = False) -> None:
         self._integer = np.int64 if wide else np.int32
@@ -103,12 +107,22 @@ class Pardiso:
             self, _free, self._call_library, self._handle, self._kind, self._n, parameters
         )
         self._call(_ANALYSE)
+        try:
+            refuse_beyond_memory(self.needed_bytes)
+        except SolveError:
+            self.close()
+            raise
         self._call(_NUMERIC)
 
     @property
     def negative_pivots(self) -> int | None:
         """Number of negative eigenvalues of an indefinite matrix."""
         return int(self._parameters[_NEGATIVE]) if self._kind == _INDEFINITE else None
+
+    @property
+    def needed_bytes(self) -> float:
+        """Memory that the numeric factorisation takes, as its symbolic analysis says."""
+        return 1024.0 * (float(self._parameters[_KEPT]) + float(self._parameters[_FACTOR]))
 
     def numeric(self, values: np.ndarray) -> None:
         """Factorise anew with new values of the same pattern."""

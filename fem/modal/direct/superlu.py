@@ -14,6 +14,7 @@ class SuperLU:
     """An LU factorisation in symmetric mode; see `factor.Factor`."""
 
     name = "SuperLU"
+    counts = False
     negative_pivots: int | None = None
 
     def __init__(self, upper: Upper) -> None:
