@@ -80,6 +80,7 @@ def lowest_modes(
     block: int | None = None,
     tolerance: float = 1e-7,
     most_steps: int = 80,
+    workers: int = 1,
 ) -> Pairs:
     """Return the lowest modes, clusters whole.
 
@@ -106,6 +107,8 @@ def lowest_modes(
         Relative residual of each mode; its eigenvalue is right to about the square.
     most_steps : int
         Steps after which the iteration gives up.
+    workers : int
+        Threads for the dense work.
 
     Raises
     ------
@@ -114,7 +117,7 @@ def lowest_modes(
     """
     if count is None and limit is None:
         raise ValueError("neither a number of modes nor a limit is given")
-    space = Space(solve, apply_mass, draw, known, block or _block(count))
+    space = Space(solve, apply_mass, draw, known, block or _block(count), workers)
     floor = 0.0 if limit is None else 1.0 / (limit - sigma)
     while True:
         space.step()

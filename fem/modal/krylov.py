@@ -8,6 +8,8 @@ from dataclasses import dataclass
 import numpy as np
 import scipy.linalg as sla
 
+from .parallel import in_slices
+
 Apply = Callable[[np.ndarray], np.ndarray]
 
 #: Columns in one piece of storage of the basis.
@@ -21,6 +23,9 @@ _WEAK = 1e-4
 
 #: Directions of a block down to this share of its strongest are normalised together.
 _TRUSTED = 1e-6
+
+#: Blocks whose norms differ by less are orthonormal to rounding after one pass.
+_EVEN = 1e-2
 
 #: Fresh vectors that probe for what the space has missed, and how often they are
 #: multiplied by the operator.
@@ -62,6 +67,8 @@ class Space:
         M-orthonormal eigenvectors of A to stay orthogonal to.
     block : int
         Vectors in a block.
+    workers : int
+        Threads for the dense work.
     """
 
     def __init__(
@@ -71,10 +78,11 @@ class Space:
         draw: Callable[[int], np.ndarray],
         known: np.ndarray | None,
         block: int,
+        workers: int = 1,
     ) -> None:
         self.block = block
         self._solve, self._apply_mass, self._draw = solve, apply_mass, draw
-        self._basis = _Columns(block)
+        self._basis = _Columns(block, workers)
         self._projected = np.zeros((0, 0))
         self._coupling = np.zeros((0, 0))
         self._previous: np.ndarray | None = None
@@ -207,6 +215,7 @@ def _normalised(
     """Return V, M V, root with V M-orthonormal and vectors = V root; drop what is below floor."""
     rest, rest_mass = vectors, mass
     found: list[tuple[np.ndarray, np.ndarray]] = []
+    again = False
     while rest.shape[1]:
         square, turn = sla.eigh(rest.T @ rest_mass)
         norms = np.sqrt(np.maximum(square, 0.0))
@@ -216,16 +225,21 @@ def _normalised(
         part, weak = turn[:, keep] / norms[keep], turn[:, ~keep]
         new, new_mass = rest @ part, rest_mass @ part
         found.append((new, new_mass))
+        again |= bool(norms[keep].min() < _EVEN * norms.max())
+        if weak.shape[1] == 0:
+            break
         # Products of vectors tell directions this much weaker from rounding only
         # when the strong ones are gone.
+        again = True
         rest, rest_mass = rest @ weak, rest_mass @ weak
         along = new.T @ rest_mass
         rest, rest_mass = rest - new @ along, rest_mass - new_mass @ along
     if not found:
         return vectors[:, :0], mass[:, :0], np.zeros((0, vectors.shape[1]))
-    new, new_mass = (np.hstack(parts) for parts in zip(*found, strict=True))
-    triangle = sla.cholesky(new.T @ new_mass)
-    new, new_mass = (sla.solve_triangular(triangle, x.T, trans=1).T for x in (new, new_mass))
+    new, new_mass = found[0] if len(found) == 1 else map(np.hstack, zip(*found, strict=True))
+    if again:
+        inverse = sla.inv(sla.cholesky(new.T @ new_mass))
+        new, new_mass = new @ inverse, new_mass @ inverse
     return new, new_mass, new.T @ mass
 
 
@@ -244,7 +258,8 @@ def _without(
 class _Columns:
     """Columns appended block by block, in pieces, so that nothing is copied."""
 
-    def __init__(self, block: int) -> None:
+    def __init__(self, block: int, workers: int) -> None:
+        self._workers = workers
         self._width = max(_PIECE, block)
         self._pieces: list[np.ndarray] = []
         self._used = 0
@@ -267,8 +282,16 @@ class _Columns:
         ]
 
     def remove(self, vectors: np.ndarray, mass: np.ndarray) -> np.ndarray:
+        """Return vectors less their parts along these columns."""
+        rows = len(vectors)
         for part in self._parts():
-            vectors = vectors - part @ (part.T @ mass)
+            shares = in_slices(lambda s, q=part: q[s].T @ mass[s], rows, self._workers)
+            along = np.sum(shares, axis=0)
+
+            def subtract(s: slice, q: np.ndarray = part, c: np.ndarray = along) -> None:
+                vectors[s] -= q[s] @ c
+
+            in_slices(subtract, rows, self._workers)
         return vectors
 
     def mix(self, mixes: np.ndarray) -> np.ndarray:

@@ -6,11 +6,16 @@ import time
 from dataclasses import dataclass, replace
 
 import numpy as np
+import scipy.linalg as sla
 
 from ...geometry.errors import SolveError
 from .direct.factor import Factor, factorise
+from .direct.inertia import negative_eigenvalues
+from .direct.triangle import Upper
 from .eigen import CLUSTER, lowest_modes
+from .memory import NoRoom
 from .mesh_error import Excess, excess
+from .parallel import SplitMatrix
 from .singular import saturation
 from .surface import facet_areas
 from .system import System
@@ -100,6 +105,7 @@ def solve_spectrum(
     thread_count: int | None = None,
     estimate: bool = False,
     count: bool = False,
+    prove: bool = False,
 ) -> Spectrum:
     """Return the lowest elastic modes of a system; clusters are whole.
 
@@ -118,23 +124,26 @@ def solve_spectrum(
         Whether to estimate the mesh error of each mode.
     count : bool
         Whether to count the modes by inertia, where the library can.
+    prove : bool
+        Whether to count them by a slower factorisation where it cannot.
 
     Raises
     ------
     SolveError
         If the factorisation fails or the iteration does not converge.
     """
-    with threads(thread_count):
+    with threads(thread_count) as workers:
         began = time.perf_counter()
         sigma, factor = _factor(system, library)
+        count = (count and factor.counts) or prove
         factored = time.perf_counter()
         try:
-            found = _search(system, factor, sigma, modes, up_to_hz, None)
-            missing = _missing(system, found.values, library) if count else None
+            found = _search(system, factor, sigma, modes, up_to_hz, None, workers)
+            missing = _missing(system, found.values, library, factor.counts) if count else None
             for block in _BLOCKS if missing else ():
                 # The count says that modes were missed: search again in larger blocks.
-                found = _search(system, factor, sigma, modes, up_to_hz, block)
-                missing = _missing(system, found.values, library)
+                found = _search(system, factor, sigma, modes, up_to_hz, block, workers)
+                missing = _missing(system, found.values, library, factor.counts)
                 if not missing:
                     break
             solved = time.perf_counter()
@@ -190,39 +199,49 @@ def _search(
     modes: int | None,
     up_to_hz: float | None,
     block: int | None,
+    workers: int,
 ) -> _Found:
     constraint = system.constraint
+    mass, nodes = SplitMatrix(system.mass, workers), len(constraint.free)
     pairs = lowest_modes(
         lambda b: constraint.to_vectors(factor.solve(constraint.to_unknowns(b))),
-        system.apply_mass,
+        lambda v: (mass @ np.ascontiguousarray(v).reshape(nodes, -1)).reshape(v.shape),
         _draw(system),
         count=modes,
         limit=None if up_to_hz is None else (2.0 * np.pi * up_to_hz) ** 2,
         sigma=sigma,
         known=system.rigid,
         block=block,
+        workers=workers,
     )
     values, vectors, residuals = _refined(system, pairs.vectors)
-    shapes = np.ascontiguousarray(vectors.T).reshape(len(values), len(constraint.free), 3)
+    shapes = np.ascontiguousarray(vectors.T).reshape(len(values), nodes, 3)
     return _Found(values=values, shapes=shapes, residuals=residuals, solves=pairs.solves)
 
 
-def _missing(system: System, values: np.ndarray, library: str | None) -> int | None:
+def _missing(system: System, values: np.ndarray, library: str | None, counts: bool) -> int | None:
     """Return how many eigenvalues up to the last of `values` are not among them.
 
     By Sylvester's law of inertia the negative pivots of K - s M are the modes
     below s; s is a fraction of a cluster's width above the last value. None
-    where the library does not tell.
+    where there is nothing to count, or no room for a second factorisation.
     """
     if len(values) == 0:
         return None
-    shift = values[-1] * (1.0 + _ABOVE * CLUSTER)
-    factor = factorise(system.shifted(shift), positive=False, library=library)
+    upper = system.shifted(values[-1] * (1.0 + _ABOVE * CLUSTER))
     try:
-        below = factor.negative_pivots
+        below = _negative_pivots(upper, library) if counts else negative_eigenvalues(upper)
+    except NoRoom:
+        return None
+    return None if below is None else below - len(values) - system.rigid.shape[1]
+
+
+def _negative_pivots(upper: Upper, library: str | None) -> int | None:
+    factor = factorise(upper, positive=False, library=library)
+    try:
+        return factor.negative_pivots
     finally:
         factor.close()
-    return None if below is None else below - len(values) - system.rigid.shape[1]
 
 
 def _excess(system: System, factor: Factor, sigma: float, found: _Found) -> Excess:
@@ -250,7 +269,8 @@ def _excess(system: System, factor: Factor, sigma: float, found: _Found) -> Exce
 
 
 def _factor(system: System, library: str | None) -> tuple[float, Factor]:
-    if system.rigid.shape[1] == 0:
+    # On soft springs a part is nearly free, and K alone nearly singular.
+    if system.rigid.shape[1] == 0 and not system.beds:
         return 0.0, factorise(system.stiffness, library=library)
     sigma = -_SHIFT * _lowest_estimate(system)
     for attempt in range(_TRIES):
@@ -299,9 +319,13 @@ def _refined(system: System, vectors: np.ndarray) -> tuple[np.ndarray, np.ndarra
     if vectors.shape[1] == 0:
         return np.zeros(0), vectors, np.zeros(0)
     elastic = system.apply_stiffness(vectors)
-    energy = system.constraint.to_unknowns(vectors).T @ elastic
-    values, turn = np.linalg.eigh(0.5 * (energy + energy.T))
-    vectors, elastic = vectors @ turn, elastic @ turn
+    reduced = system.constraint.to_unknowns(vectors)
     inertia = system.constraint.to_unknowns(system.apply_mass(vectors))
+    values, turn = sla.eigh(_even(reduced.T @ elastic), _even(reduced.T @ inertia))
+    elastic, inertia = elastic @ turn, inertia @ turn
     size = np.linalg.norm(elastic, axis=0)
-    return values, vectors, np.linalg.norm(elastic - inertia * values, axis=0) / size
+    return values, vectors @ turn, np.linalg.norm(elastic - inertia * values, axis=0) / size
+
+
+def _even(matrix: np.ndarray) -> np.ndarray:
+    return 0.5 * (matrix + matrix.T)

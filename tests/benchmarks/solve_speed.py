@@ -1,0 +1,237 @@
+"""Assembly to 20 modes of a slotted fork, beside a plain stack and ngsolve.
+
+All contenders solve the same second-order mesh on the same threads, one at a time,
+each in its own process; libraries are loaded before the clock starts. Prints
+seconds, ratios, peak memory, and how far the frequencies are apart.
+
+    python tests/benchmarks/solve_speed.py [UNKNOWNS ...]
+
+- plain: scikit-fem's ready-made vector element and forms, scipy's `eigsh` as it comes;
+- ngsolve, scipy: order 2, its sparse Cholesky inside scipy's `eigsh`;
+- ngsolve, own: order 2, its sparse Cholesky in its own block method (LOBPCG, a fixed
+  number of steps, as it has no tolerance).
+"""
+
+from __future__ import annotations
+
+import sys
+import time
+from pathlib import Path
+
+import _fork
+import numpy as np
+from modewright.fem.modal.threads import cores
+
+#: Relative tolerance of eigenvalue residuals, for all who take one.
+TOLERANCE = 1e-7
+
+#: Steps of ngsolve's own block method; fewer leave more than 1e-8.
+STEPS = 12
+
+#: Runs of each contender; the best counts.
+RUNS = 1
+
+#: Seconds after which a contender is stopped.
+LIMIT = 600.0
+
+
+def ours(path: str, threads: int) -> None:
+    """Solve with modewright."""
+    from modewright.fem.modal.spectrum import solve_spectrum
+    from modewright.fem.modal.system import build_system
+
+    mesh = _fork.read_mesh(path)
+    began = time.perf_counter()
+    system = build_system(_fork.case(), mesh)
+    assembled = time.perf_counter()
+    found = solve_spectrum(system, modes=_fork.MODES, thread_count=threads)
+    seconds = {"assemble": assembled - began, **found.seconds}
+    seconds["total"] = time.perf_counter() - began
+    _fork.report(seconds, found.frequencies, solver=found.direct_solver, unknowns=system.unknowns)
+
+
+def plain(path: str, threads: int) -> None:
+    """Solve with scikit-fem's ready-made vector forms and scipy's eigsh as it comes."""
+    import skfem
+    from scipy.sparse.linalg import eigsh
+    from skfem.helpers import dot
+    from skfem.models.elasticity import lame_parameters, linear_elasticity
+
+    mesh = _fork.read_mesh(path)
+    corners, numbers = np.unique(mesh.cells[:, :4], return_inverse=True)
+    body = skfem.MeshTet(mesh.points[corners].T.copy(), numbers.reshape(-1, 4).T.copy())
+    steel = _fork.STEEL
+    began = time.perf_counter()
+    basis = skfem.Basis(body, skfem.ElementVector(skfem.ElementTetP2()))
+    parameters = lame_parameters(steel.youngs_modulus, steel.poisson_ratio)
+    stiffness = linear_elasticity(*parameters).assemble(basis)
+    mass = skfem.BilinearForm(lambda u, v, w: steel.density * dot(u, v)).assemble(basis)
+    fixed = basis.get_dofs(lambda x: x[0] < 1e-9).all()
+    free = np.setdiff1d(np.arange(basis.N), fixed)
+    k, m = stiffness[free][:, free].tocsc(), mass[free][:, free].tocsc()
+    assembled = time.perf_counter()
+    values = np.sort(eigsh(k, _fork.MODES, m, sigma=0.0, return_eigenvectors=True)[0])
+    done = time.perf_counter()
+    seconds = {"assemble": assembled - began, "solve": done - assembled, "total": done - began}
+    _fork.report(seconds, np.sqrt(values) / (2 * np.pi))
+
+
+def ngsolve_scipy(path: str, threads: int) -> None:
+    """Solve with ngsolve's forms and sparse Cholesky inside scipy's eigsh."""
+    _ngsolve(path, threads, own=False)
+
+
+def ngsolve_own(path: str, threads: int) -> None:
+    """Solve with ngsolve alone."""
+    _ngsolve(path, threads, own=True)
+
+
+def _ngsolve(path: str, threads: int, own: bool) -> None:
+    import ngsolve as ng
+    from ngsolve.eigenvalues import LOBPCG
+    from scipy.sparse.linalg import LinearOperator, eigsh
+
+    body = ng.Mesh(_netgen(_fork.read_mesh(path)))
+    steel = _fork.STEEL
+    e, nu = steel.youngs_modulus, steel.poisson_ratio
+    mu, lam = e / (2 * (1 + nu)), e * nu / ((1 + nu) * (1 - 2 * nu))
+    ng.SetNumThreads(threads)
+    with ng.TaskManager():
+        began = time.perf_counter()
+        space = ng.VectorH1(body, order=2, dirichlet="root")
+        u, v = space.TnT()
+
+        def strain(w):
+            return ng.Sym(ng.Grad(w))
+
+        elastic = ng.BilinearForm(
+            (2 * mu * ng.InnerProduct(strain(u), strain(v)) + lam * ng.div(u) * ng.div(v)) * ng.dx,
+            symmetric=True,
+        ).Assemble()
+        inertia = ng.BilinearForm(
+            steel.density * ng.InnerProduct(u, v) * ng.dx, symmetric=True
+        ).Assemble()
+        assembled = time.perf_counter()
+        if own:
+            inverse = elastic.mat.Inverse(space.FreeDofs(), inverse="sparsecholesky")
+            factored = time.perf_counter()
+            values, _ = LOBPCG(
+                elastic.mat,
+                inertia.mat,
+                pre=inverse,
+                num=_fork.MODES,
+                maxit=STEPS,
+                printrates=False,
+            )
+            values = np.sort(np.array(values))
+        else:
+            inverse = elastic.mat.Inverse(space.FreeDofs(), inverse="sparsecholesky")
+            factored = time.perf_counter()
+            right, left = elastic.mat.CreateColVector(), elastic.mat.CreateColVector()
+            free = np.array(list(space.FreeDofs()), bool)
+            n = len(free)
+
+            def apply(matrix):
+                def multiply(x):
+                    right.FV().NumPy()[:] = np.where(free, x.ravel(), 0.0)
+                    left.data = matrix * right
+                    return np.where(free, left.FV().NumPy(), 0.0)
+
+                return LinearOperator((n, n), matvec=multiply, dtype=float)
+
+            values = eigsh(
+                apply(elastic.mat),
+                _fork.MODES,
+                apply(inertia.mat),
+                sigma=0.0,
+                OPinv=apply(inverse),
+                tol=TOLERANCE,
+                v0=np.where(free, np.random.default_rng(0).standard_normal(n), 0.0),
+            )[0]
+            values = np.sort(values)
+        done = time.perf_counter()
+    seconds = {
+        "assemble": assembled - began,
+        "factor": factored - assembled,
+        "eigen": done - factored,
+        "total": done - began,
+    }
+    _fork.report(seconds, np.sqrt(values) / (2 * np.pi))
+
+
+def _netgen(mesh):
+    """Return the same cells as a netgen mesh; the fork's faces are flat, its cells straight."""
+    from netgen import meshing
+    from netgen.csg import Pnt
+
+    corners, numbers = np.unique(mesh.cells[:, :4], return_inverse=True)
+    cells = numbers.reshape(-1, 4)
+    number = np.full(len(mesh.points), -1)
+    number[corners] = np.arange(len(corners))
+    out = meshing.Mesh(dim=3)
+    ids = [out.Add(meshing.MeshPoint(Pnt(*p))) for p in mesh.points[corners]]
+    out.Add(meshing.FaceDescriptor(surfnr=1, domin=1, bc=1))
+    out.Add(meshing.FaceDescriptor(surfnr=2, domin=1, bc=2))
+    root = np.zeros(len(mesh.facets), bool)
+    root[mesh.faces["root"]] = True
+    for corner, held in zip(number[mesh.facets[:, :3]], root, strict=True):
+        out.Add(meshing.Element2D(1 if held else 2, [ids[i] for i in corner]))
+    for corner in cells:
+        # netgen counts the corners of a tetrahedron the other way round.
+        out.Add(meshing.Element3D(1, [ids[i] for i in corner[[0, 2, 1, 3]]]))
+    out.SetBCName(0, "root")
+    out.SetBCName(1, "rest")
+    return out
+
+
+CONTENDERS = {
+    "modewright": ours,
+    "plain": plain,
+    "ngsolve, scipy": ngsolve_scipy,
+    "ngsolve, own": ngsolve_own,
+}
+
+
+def main(wanted: list[int]) -> None:
+    """Run all contenders on each size and print a table."""
+    threads = cores()
+    say = sys.stdout.write
+    for unknowns in wanted:
+        with _fork.scratch() as folder:
+            path = Path(folder) / "fork.npz"
+            _fork.write_mesh(_fork.SIZES[unknowns], path)
+            best: dict[str, dict] = {}
+            for run in range(RUNS):
+                for name in CONTENDERS:
+                    # The plain stack takes minutes; once will do, and not beyond 50k.
+                    if name == "plain" and (run or unknowns > 60_000):
+                        continue
+                    if run and name not in best:
+                        continue
+                    got = _fork.contend(__file__, name, path, threads, LIMIT)
+                    if got and (
+                        name not in best or got["seconds"]["total"] < best[name]["seconds"]["total"]
+                    ):
+                        best[name] = got
+        first = best["modewright"]
+        say(
+            f"\nfork, {first['unknowns']} unknowns, {_fork.MODES} modes, {threads} threads, "
+            f"best of {RUNS}\n"
+        )
+        say(f"{'':16} {'total s':>8} {'ratio':>6} {'peak MB':>8} {'off by':>9}  stages\n")
+        reference = np.array(first["frequencies"][: _fork.MODES])
+        for name, got in best.items():
+            off = np.abs(np.array(got["frequencies"][: _fork.MODES]) / reference - 1).max()
+            total = got["seconds"]["total"]
+            stages = ", ".join(f"{k} {v:.2f}" for k, v in got["seconds"].items() if k != "total")
+            say(
+                f"{name:16} {total:8.2f} {total / first['seconds']['total']:6.1f} "
+                f"{got['peak_mb']:8.0f} {off:9.1e}  {stages}\n"
+            )
+
+
+if __name__ == "__main__":
+    if sys.argv[1:2] == ["--run"]:
+        CONTENDERS[sys.argv[2]](sys.argv[3], int(sys.argv[4]))
+    else:
+        main([int(a) for a in sys.argv[1:]] or [50_000, 150_000])
