@@ -100,6 +100,10 @@ def modes(
     modes: Count = None,
     up_to_hz: Annotated[float | None, Parameter(help="All modes up to this, Hz.")] = None,
     pictures: Annotated[bool, Parameter(help="Draw the sheet and the animations.")] = True,
+    prove: Annotated[
+        bool,
+        Parameter(negative="", help="Count the modes even where the direct solver cannot; slow."),
+    ] = False,
     json: Json = False,
 ) -> int:
     """Find the natural frequencies and modes of a part, by name."""
@@ -113,6 +117,7 @@ def modes(
             modes=modes,
             up_to_hz=up_to_hz,
             pictures=pictures,
+            prove=prove,
             progress=progress,
         ),
         json,

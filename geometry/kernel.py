@@ -20,7 +20,7 @@ from .ligaments import spots as spots_over
 from .mesh import Mesh
 from .quality import evenness, facet_areas, straighten, volumes
 from .size_field import SizeField
-from .sizing import FEWEST, MOST, USUAL, Extent, default_size, unknowns
+from .sizing import FEWEST, MOST, USUAL, Extent, default_size, size_for, unknowns
 from .solid import Patch, Solid
 from .words import nearest
 
@@ -46,7 +46,7 @@ _FEW_BAD = 1e-3
 _ATTEMPTS = 4
 
 #: More unknowns than any machine this is meant for would solve.
-_TOO_MANY = 6e6
+TOO_MANY = 6e6
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -60,6 +60,7 @@ class Request:
     patches : to imprint
     coarse : without a size, a coarse mesh to begin a refinement with
     local : sizes from place to place instead of one
+    most : unknowns above which nothing is begun
     """
 
     solid: Solid
@@ -67,6 +68,7 @@ class Request:
     patches: tuple[Patch, ...] = ()
     coarse: bool = False
     local: SizeField | None = None
+    most: float = TOO_MANY
 
 
 @dataclass(frozen=True, eq=False, kw_only=True, slots=True)
@@ -106,12 +108,15 @@ def mesh(request: Request) -> Mesh:
         _check(part, request.solid)
         size = _largest_size(request, part.extent)
         about = unknowns(part.extent, size)
-        if about > _TOO_MANY:
+        if about > request.most:
+            # The estimate is right to a quarter: the size told must do even so.
+            enough = size_for(part.extent, 0.75 * request.most)
             raise InputError(
-                f"this size would give about {about / 1e6:.0f} million unknowns",
+                f"this size would give about {about / 1e6:.2g} million unknowns, "
+                "more than the memory of this machine takes",
                 key="solve.size",
                 value=size,
-                allowed=f"about {default_size(request.solid.thin, part.extent):g} mm is usual here",
+                allowed=f"about {enough:.2g} mm or more",
             )
         most = USUAL if request.coarse else 1.5 * MOST
         found = _meshed(part, size, np.inf if request.size else most, request.local)

@@ -47,6 +47,7 @@ def generate(
     patches: tuple[Patch, ...] = (),
     coarse: bool = False,
     size_field: SizeField | None = None,
+    most_unknowns: float | None = None,
     time_limit: float = 300.0,
 ) -> Mesh:
     """Return the second-order mesh of a shape.
@@ -63,6 +64,8 @@ def generate(
         Without a size, a coarse mesh to begin a refinement with.
     size_field : SizeField, optional
         Element sizes from place to place, instead of one.
+    most_unknowns : float, optional
+        Meshes that would have more are refused before they are begun.
     time_limit : float, s
 
     Raises
@@ -90,6 +93,8 @@ def generate(
         "coarse": coarse,
         "local": size_field,
     }
+    if most_unknowns is not None:
+        request["most"] = most_unknowns
     answer = _ask(request, time_limit)
     if isinstance(answer, Mesh):
         return answer

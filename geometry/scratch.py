@@ -128,13 +128,15 @@ def _locked(hidden: Path) -> int | None:
 
 def _lives(hidden: Path) -> bool:
     """Tell whether a folder that cannot be locked belongs to a run that may still live."""
-    if fcntl is not None and _can_lock(hidden.parent):
+    if _can_lock(hidden.parent):
         return hidden.exists()
     return hidden.exists() and time.time() - hidden.stat().st_mtime < _ABANDONED
 
 
 def _can_lock(folder: Path) -> bool:
     """Tell whether the file system of a folder knows locks."""
+    if fcntl is None:
+        return False
     lock = os.open(folder, os.O_RDONLY)
     try:
         fcntl.flock(lock, fcntl.LOCK_SH | fcntl.LOCK_NB)

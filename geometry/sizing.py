@@ -47,13 +47,13 @@ def default_size(thin: float, extent: Extent, usual: float = USUAL) -> float:
     if thin <= 0:
         thin = 2.0 * extent.volume / extent.area
     fine, coarse = 0.45 * thin, 1.5 * thin
-    size = min(max(fine, _size_for(extent, usual)), coarse)
-    size = max(size, _size_for(extent, MOST))
-    return float(f"{min(size, _size_for(extent, FEWEST)):.3g}")
+    size = min(max(fine, size_for(extent, usual)), coarse)
+    size = max(size, size_for(extent, MOST))
+    return float(f"{min(size, size_for(extent, FEWEST)):.3g}")
 
 
-def _size_for(extent: Extent, wanted: float) -> float:
-    """Return the size that gives about that many unknowns."""
+def size_for(extent: Extent, wanted: float) -> float:
+    """Return the size, mm, that gives about that many unknowns."""
     low, high = 1e-6 * extent.length, extent.length
     for _ in range(60):
         middle = (low * high) ** 0.5

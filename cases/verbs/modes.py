@@ -41,9 +41,12 @@ def answer_modes(
     modes: int | None = None,
     up_to_hz: float | None = None,
     pictures: bool = True,
+    prove: bool = False,
     progress: Callable[[str], None] | None = None,
 ) -> Answer:
     """Solve a case and, with `out`, write all results into that folder.
+
+    With `prove` the modes are counted even where the direct solver cannot.
 
     Raises
     ------
@@ -58,7 +61,7 @@ def answer_modes(
     # Loaded only now, so that a mistake in the case is told at once.
     from ...fem.modal.solve import solve
 
-    result = solve(case, progress=progress)
+    result = solve(case, progress=progress, prove=prove)
     lines, skipped = _written(result, out, pictures, progress) if out is not None else ((), ())
     return Answer(
         document=modes_document(result),

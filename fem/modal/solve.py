@@ -14,7 +14,7 @@ from ...geometry.mesh import Mesh
 from ...geometry.mesher import generate
 from ...geometry.solid import Patch
 from .case import Case
-from .memory import peak_megabytes
+from .memory import NoRoom, affordable_unknowns, peak_megabytes
 from .modes import MeshFacts, Modes, SolveFacts
 from .naming.beats import beat_warnings
 from .naming.identify import identify
@@ -26,8 +26,18 @@ from .theory.support import held_of
 
 Progress = Callable[[str], None]
 
+#: Flat parts need less memory than the estimate before meshing says; what it lets pass is
+#: judged again by the symbolic analysis.
+_HOPE = 2.5
 
-def solve(case: Case, *, mesh: Mesh | None = None, progress: Progress | None = None) -> Modes:
+
+def solve(
+    case: Case,
+    *,
+    mesh: Mesh | None = None,
+    progress: Progress | None = None,
+    prove: bool = False,
+) -> Modes:
     """Return the elastic modes of a case, named, by ascending frequency.
 
     Parameters
@@ -37,18 +47,22 @@ def solve(case: Case, *, mesh: Mesh | None = None, progress: Progress | None = N
         A mesh of the case's shape at 20 degrees C; default a new one.
     progress : callable, optional
         Called with a few words at the start of each stage.
+    prove : bool
+        Whether to count the modes by a slower factorisation where the direct solver
+        cannot count.
 
     Raises
     ------
     InputError
-        If mounts, masses, targets or measured modes point at nothing.
+        If mounts, masses, targets or measured modes point at nothing, or the mesh is
+        too fine for the memory that is free.
     MeshError, ToolError
         If the part could not be meshed.
     SolveError
         If the eigen-solve failed.
     """
     try:
-        return _solve(case, mesh, progress or _silent)
+        return _solve(case, mesh, progress or _silent, prove)
     except InputError as error:
         raise error.within(file=None if case.file is None else str(case.file)) from None
 
@@ -64,7 +78,12 @@ def case_mesh(case: Case, *, progress: Progress | None = None) -> Mesh:
         If the part could not be meshed.
     """
     (progress or _silent)("meshing")
-    return generate(case.shape, size_mm=case.settings.size, patches=case_patches(case))
+    return generate(
+        case.shape,
+        size_mm=case.settings.size,
+        patches=case_patches(case),
+        most_unknowns=_HOPE * affordable_unknowns(),
+    )
 
 
 def case_patches(case: Case) -> tuple[Patch, ...]:
@@ -74,7 +93,7 @@ def case_patches(case: Case) -> tuple[Patch, ...]:
     return tuple(dict.fromkeys(face for face in selectors if isinstance(face, Patch)))
 
 
-def _solve(case: Case, mesh: Mesh | None, progress: Progress) -> Modes:
+def _solve(case: Case, mesh: Mesh | None, progress: Progress, prove: bool) -> Modes:
     start = perf_counter()
     seconds = {}
     if mesh is None:
@@ -88,9 +107,17 @@ def _solve(case: Case, mesh: Mesh | None, progress: Progress) -> Modes:
 
     progress(f"solving {system.unknowns} unknowns")
     settings = case.settings
-    spectrum = solve_spectrum(
-        system, modes=settings.modes, up_to_hz=settings.up_to, estimate=True, count=True
-    )
+    try:
+        spectrum = solve_spectrum(
+            system,
+            modes=settings.modes,
+            up_to_hz=settings.up_to,
+            estimate=True,
+            count=True,
+            prove=prove,
+        )
+    except NoRoom as error:
+        raise _too_fine(mesh, error) from None
     if len(spectrum.frequencies) == 0:
         raise InputError(
             "no mode lies that low", key="solve.up_to_hz", value=settings.up_to, allowed="more"
@@ -139,6 +166,19 @@ def _solve(case: Case, mesh: Mesh | None, progress: Progress) -> Modes:
     )
 
 
+def _too_fine(mesh: Mesh, error: NoRoom) -> InputError:
+    """Return the mistake of a mesh whose factor will not fit, with the size that would."""
+    # Solid bodies need memory as the fourth power of 1 / size, flat ones as the square.
+    enough = 1e3 * mesh.size * (1.1 * error.needed / max(error.free, 1.0)) ** (1.0 / 3.0)
+    return InputError(
+        f"{3 * len(mesh.points)} unknowns would take {error.needed / 2**30:.1f} GB to factorise, "
+        f"and {error.free / 2**30:.1f} GB of memory are free",
+        key="solve.size",
+        value=float(f"{1e3 * mesh.size:.4g}"),
+        allowed=f"about {enough:.3g} mm or more",
+    )
+
+
 def _anatomy(case: Case, mesh: Mesh) -> Anatomy:
     """Return what the shape says it is; only the mesh can tell of an imported body."""
     anatomy = case.shape.anatomy()
@@ -157,7 +197,10 @@ def _material_warnings(case: Case) -> tuple[str, ...]:
 def _count_warnings(missing: int | None) -> tuple[str, ...]:
     if missing is not None:
         return ()
-    return ("this direct solver cannot count modes, so none is proved to be there in full number",)
+    return (
+        "the modes were not counted (this direct solver cannot, or memory did not suffice), so "
+        "one may be missing; --prove counts them by a slower way",
+    )
 
 
 def _silent(words: str) -> None:
