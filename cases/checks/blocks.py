@@ -123,7 +123,7 @@ BLOCKS = (
                 "density": 705.6,
             },
             modes=10,
-            size=5.0,
+            size=5.5,
         ),
         expected=spectrum(
             (980.81, 1),
