@@ -97,6 +97,10 @@ def modes(
     *,
     out: Annotated[Path | None, Parameter(help="Write all results into this folder.")] = None,
     size: Annotated[float | None, Parameter(help="Size of the mesh's cells, mm.")] = None,
+    accuracy_cents: Annotated[
+        float | None,
+        Parameter(help="Refine the mesh until no mode's mesh error is over this, cents."),
+    ] = None,
     modes: Count = None,
     up_to_hz: Annotated[float | None, Parameter(help="All modes up to this, Hz.")] = None,
     pictures: Annotated[bool, Parameter(help="Draw the sheet and the animations.")] = True,
@@ -114,6 +118,7 @@ def modes(
             case,
             out=out,
             size=size,
+            accuracy_cents=accuracy_cents,
             modes=modes,
             up_to_hz=up_to_hz,
             pictures=pictures,

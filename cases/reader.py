@@ -13,7 +13,7 @@ from ..geometry.errors import InputError
 from .body import read_shape, shape_table
 from .places import Places
 from .schema import AttachedMassTable, CaseTables, MountTable, TargetTable, plain, read_tables
-from .sense import A4_HZ, CENTS, TEMPERATURE_C
+from .sense import A4_HZ, ACCURACY_CENTS, CENTS, TEMPERATURE_C
 from .source import read_toml
 from .substance import material_table, read_material
 
@@ -84,7 +84,10 @@ def _case(document: Mapping[str, Any], file: Path | None, folder: Path) -> Case:
     # A body that is a mesh already says what faces it has only when it is read.
     places = Places(() if shape.family.mesh is not None else shape.solid().faces)
     settings = SolveSettings(
-        modes=_modes_wanted(tables), up_to=tables.solve.up_to_hz, size=tables.solve.size
+        modes=_modes_wanted(tables),
+        up_to=tables.solve.up_to_hz,
+        size=tables.solve.size,
+        accuracy=tables.solve.accuracy_cents,
     )
     single = isinstance(document.get("mount"), Mapping)
     mounts = tuple(
@@ -110,15 +113,7 @@ def _case(document: Mapping[str, Any], file: Path | None, folder: Path) -> Case:
         "attached_mass": [plain(table) for table in tables.attached_mass],
         "pitch": plain(tables.pitch),
         "surroundings": plain(tables.surroundings),
-        "solve": {
-            key: value
-            for key, value in (
-                ("modes", settings.modes),
-                ("up_to_hz", settings.up_to),
-                ("size", settings.size),
-            )
-            if value is not None
-        },
+        "solve": solve_table(settings),
         "target": [plain(table) for table in tables.target],
         "measured": [plain(table) for table in tables.measured],
         "expect": [plain(table) for table in tables.expect],
@@ -148,10 +143,27 @@ def _case(document: Mapping[str, Any], file: Path | None, folder: Path) -> Case:
     )
 
 
+def solve_table(settings: SolveSettings) -> dict[str, Any]:
+    """Return the settings as the case file would hold them."""
+    table = {
+        "modes": settings.modes,
+        "up_to_hz": settings.up_to,
+        "size": settings.size,
+        "accuracy_cents": settings.accuracy,
+    }
+    return {key: value for key, value in table.items() if value is not None}
+
+
 def _check_numbers(tables: CaseTables) -> None:
     if tables.version != 1:
         raise InputError("is not known", key="version", value=tables.version, allowed="1")
     A4_HZ.check(tables.pitch.a4_hz, "pitch.a4_hz")
+    if tables.solve.accuracy_cents is not None:
+        ACCURACY_CENTS.check(tables.solve.accuracy_cents, "solve.accuracy_cents")
+        if tables.solve.size is not None:
+            raise InputError(
+                "has both size and accuracy_cents", key="solve", allowed="one of the two"
+            )
     TEMPERATURE_C.check(tables.surroundings.temperature_c, "surroundings.temperature_c")
 
 

@@ -221,6 +221,7 @@ class SolveTable(Table):
     modes: Annotated[int, Field(ge=1, le=500)] | None = None
     up_to_hz: Positive | None = None
     size: Positive | None = None
+    accuracy_cents: Number | None = None
 
 
 class TargetTable(Table):

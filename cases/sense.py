@@ -111,6 +111,8 @@ ORTHOTROPIC_POISSON = Sense(low=-2.0, high=2.0)
 
 A4_HZ = Sense(low=300.0, high=600.0, unit="Hz")
 TEMPERATURE_C = Sense(low=-200.0, high=600.0, unit="degrees C")
+#: Finer than any maker could tell, and coarser than any mesh is.
+ACCURACY_CENTS = Sense(low=0.01, high=100.0, unit="cents")
 CENTS = Sense(low=-1200.0, high=1200.0, unit="cents")
 
 

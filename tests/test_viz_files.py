@@ -205,9 +205,12 @@ def test_json_has_the_documented_keys_in_order(modes):
     document = strict_json(document_text(modes_document(modes)))
     assert list(document) == ["format", "version", "case", "mesh", "solve", "modes"]
     assert (document["format"], document["version"]) == ("modewright-modes", 1)
-    assert list(document["mesh"]) == "nodes cells unknowns size_mm mass_g volume_mm3".split()
+    assert (
+        list(document["mesh"])
+        == "nodes cells unknowns size_mm mass_g volume_mm3 volume_error_ppm area_error_ppm".split()
+    )
     assert list(document["solve"]) == (
-        "direct_solver missing_modes rigid_modes seconds peak_mb".split()
+        "direct_solver missing_modes rigid_modes seconds peak_mb meshes".split()
     )
     assert list(document["modes"][0]) == (
         "index name mixed pair frequency_hz raw_hz mesh_error_cents note cents_from_note ratio "

@@ -13,7 +13,8 @@ from ...viz.document import modes_document
 from ...viz.table import modes_table
 from ..answer import Answer
 from ..outlet import check_folder
-from ..reader import read_case
+from ..reader import read_case, solve_table
+from ..sense import ACCURACY_CENTS
 
 #: Columns that a narrow terminal goes without, the first to go first.
 SPARE = (
@@ -38,6 +39,7 @@ def answer_modes(
     *,
     out: Path | None = None,
     size: float | None = None,
+    accuracy_cents: float | None = None,
     modes: int | None = None,
     up_to_hz: float | None = None,
     pictures: bool = True,
@@ -57,7 +59,9 @@ def answer_modes(
     """
     if out is not None:
         check_folder(out)
-    case = with_settings(read_case(path), size=size, modes=modes, up_to_hz=up_to_hz)
+    case = with_settings(
+        read_case(path), size=size, accuracy_cents=accuracy_cents, modes=modes, up_to_hz=up_to_hz
+    )
     # Loaded only now, so that a mistake in the case is told at once.
     from ...fem.modal.solve import solve
 
@@ -77,6 +81,7 @@ def with_settings(
     case: Case,
     *,
     size: float | None = None,
+    accuracy_cents: float | None = None,
     modes: int | None = None,
     up_to_hz: float | None = None,
 ) -> Case:
@@ -94,20 +99,17 @@ def with_settings(
         raise InputError("is out of range", key="--modes", value=modes, allowed="1 to 500")
     settings = case.settings
     if size is not None:
-        settings = replace(settings, size=size)
+        settings = replace(settings, size=size, accuracy=None)
+    if accuracy_cents is not None:
+        ACCURACY_CENTS.check(accuracy_cents, "--accuracy-cents")
+        if size is not None:
+            raise InputError("does not go with --size", key="--accuracy-cents")
+        settings = replace(settings, size=None, accuracy=accuracy_cents)
     if modes is not None or up_to_hz is not None:
         # Either option alone replaces both of the case's limits.
         settings = replace(settings, modes=modes, up_to=up_to_hz)
     document = dict(case.document)
-    document["solve"] = {
-        key: value
-        for key, value in (
-            ("modes", settings.modes),
-            ("up_to_hz", settings.up_to),
-            ("size", settings.size),
-        )
-        if value is not None
-    }
+    document["solve"] = solve_table(settings)
     return replace(case, settings=settings, document=document)
 
 
@@ -117,7 +119,8 @@ def heading(result: Modes) -> str:
     held = ", ".join(dict.fromkeys(mount.hold.value for mount in case.mounts)) or "free"
     return (
         f"{case.title}: {case.shape.family.name}, {case.material.name}, {facts.mass_g:.4g} g, "
-        f"{held}; {facts.unknowns} unknowns, cells of {facts.size_mm:.3g} mm, "
+        f"{held}; {facts.unknowns} unknowns, "
+        f"cells {'of' if result.solve_facts.meshes == 1 else 'up to'} {facts.size_mm:.3g} mm, "
         f"{result.solve_facts.seconds['total']:.1f} s"
     )
 

@@ -126,6 +126,7 @@ temperature_c = 20.0
 [solve]
 modes = 12                   # and, or instead: up_to_hz = 5000
 # size = 1.2                 # mm, size of the mesh's cells; default from the thinnest part
+# accuracy_cents = 2.0       # or this: refine until no mode's mesh error is over it
 
 # [[target]]                 # a wanted pitch: shown as cents off
 # mode = "flatwise bending 1"

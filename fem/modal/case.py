@@ -75,11 +75,13 @@ class SolveSettings:
     modes : number of elastic modes wanted; None: all up to `up_to`
     up_to : Hz, or None
     size : element size, mm; None: from the thinnest section and the length
+    accuracy : cents that no mode's mesh error may exceed, instead of a size; or None
     """
 
     modes: int | None = 12
     up_to: float | None = None
     size: float | None = None
+    accuracy: float | None = None
 
 
 @dataclass(frozen=True, eq=False, kw_only=True, slots=True)

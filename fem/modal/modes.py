@@ -78,7 +78,16 @@ class Mode:
 
 @dataclass(frozen=True, kw_only=True, slots=True)
 class MeshFacts:
-    """Counts and sizes of the mesh that was solved."""
+    """Counts and sizes of the mesh that was solved.
+
+    Attributes
+    ----------
+    nodes, cells, unknowns : counts
+    size_mm : element size asked for; the largest where it differs from place to place
+    mass_g, volume_mm3 : of the part
+    volume_error_ppm, area_error_ppm : by how much the mesh's volume and surface exceed
+        those of the exact body, in millionths; None for a body that is a mesh itself
+    """
 
     nodes: int
     cells: int
@@ -86,6 +95,8 @@ class MeshFacts:
     size_mm: float
     mass_g: float
     volume_mm3: float
+    volume_error_ppm: float | None = None
+    area_error_ppm: float | None = None
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -98,8 +109,9 @@ class SolveFacts:
     missing_modes : modes proved to be missing; None where not counted
     rigid_modes : rigid-body modes found and left out
     seconds : stage -> s; stages mesh, assemble, factor, eigen (counting included),
-        mesh_error, names, total
+        mesh_error, names, total; with an accuracy also adapt, all meshes but the last
     peak_mb : peak memory of this process, MB
+    meshes : meshes solved, more than one where an accuracy was asked for
     """
 
     direct_solver: str
@@ -107,6 +119,7 @@ class SolveFacts:
     rigid_modes: int
     seconds: dict[str, float]
     peak_mb: float
+    meshes: int = 1
 
 
 @dataclass(frozen=True, eq=False, kw_only=True, slots=True)

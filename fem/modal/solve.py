@@ -12,15 +12,17 @@ from ...geometry.errors import InputError
 from ...geometry.imported import imported_anatomy
 from ...geometry.mesh import Mesh
 from ...geometry.mesher import generate
+from ...geometry.quality import facet_areas, volumes
 from ...geometry.solid import Patch
+from .adapt import Adapted, adapt, unmet
 from .case import Case
 from .memory import NoRoom, affordable_unknowns, peak_megabytes
 from .modes import MeshFacts, Modes, SolveFacts
 from .naming.beats import beat_warnings
 from .naming.identify import identify
 from .rows import mode_rows
-from .spectrum import converged, solve_spectrum
-from .system import REFERENCE_TEMPERATURE, build_system
+from .spectrum import Spectrum, converged, counted, solve_spectrum
+from .system import REFERENCE_TEMPERATURE, System, build_system
 from .theory.predict import predict
 from .theory.support import held_of
 
@@ -77,6 +79,8 @@ def case_mesh(case: Case, *, progress: Progress | None = None) -> Mesh:
     MeshError, ToolError
         If the part could not be meshed.
     """
+    if case.settings.accuracy is not None:
+        return _adapted(case, case.settings.accuracy, progress or _silent).mesh
     (progress or _silent)("meshing")
     return generate(
         case.shape,
@@ -93,18 +97,21 @@ def case_patches(case: Case) -> tuple[Patch, ...]:
     return tuple(dict.fromkeys(face for face in selectors if isinstance(face, Patch)))
 
 
-def _solve(case: Case, mesh: Mesh | None, progress: Progress, prove: bool) -> Modes:
+def _adapted(case: Case, accuracy: float, progress: Progress) -> Adapted:
+    return adapt(case, accuracy, patches=case_patches(case), progress=progress)
+
+
+def _solved(
+    case: Case, mesh: Mesh | None, progress: Progress, prove: bool
+) -> tuple[Mesh, System, Spectrum, dict[str, float]]:
+    """Return mesh, system, spectrum and seconds by stage of a case with one mesh."""
     start = perf_counter()
-    seconds = {}
     if mesh is None:
         mesh = case_mesh(case, progress=progress)
     meshed = perf_counter()
-    seconds["mesh"] = meshed - start
-
     progress(f"assembling {3 * len(mesh.points)} unknowns")
     system = build_system(case, mesh)
-    seconds["assemble"] = perf_counter() - meshed
-
+    assembled = perf_counter()
     progress(f"solving {system.unknowns} unknowns")
     settings = case.settings
     try:
@@ -118,11 +125,29 @@ def _solve(case: Case, mesh: Mesh | None, progress: Progress, prove: bool) -> Mo
         )
     except NoRoom as error:
         raise _too_fine(mesh, error) from None
+    seconds = {"mesh": meshed - start, "assemble": assembled - meshed}
+    return mesh, system, spectrum, seconds | spectrum.seconds
+
+
+def _solve(case: Case, mesh: Mesh | None, progress: Progress, prove: bool) -> Modes:
+    start = perf_counter()
+    settings = case.settings
+    if mesh is None and settings.accuracy is not None:
+        found = _adapted(case, settings.accuracy, progress)
+        mesh, system, meshes, shortfall = found.mesh, found.system, found.meshes, found.warnings
+        progress("counting the modes")
+        spectrum = counted(
+            system, found.spectrum, modes=settings.modes, up_to_hz=settings.up_to, prove=prove
+        )
+        seconds = found.seconds | spectrum.seconds
+    else:
+        mesh, system, spectrum, seconds = _solved(case, mesh, progress, prove)
+        meshes = 1
+        shortfall = unmet(spectrum, settings.accuracy, "the mesh was given")
     if len(spectrum.frequencies) == 0:
         raise InputError(
             "no mode lies that low", key="solve.up_to_hz", value=settings.up_to, allowed="more"
         )
-    seconds |= spectrum.seconds
     best, order = converged(spectrum)
     spectrum = spectrum.ordered(order)
 
@@ -150,6 +175,7 @@ def _solve(case: Case, mesh: Mesh | None, progress: Progress, prove: bool) -> Mo
             size_mm=mesh.size * 1e3,
             mass_g=system.body_mass * 1e3,
             volume_mm3=mesh.volume * 1e9,
+            **_geometry_errors(mesh),
         ),
         solve_facts=SolveFacts(
             direct_solver=spectrum.direct_solver,
@@ -157,13 +183,27 @@ def _solve(case: Case, mesh: Mesh | None, progress: Progress, prove: bool) -> Mo
             rigid_modes=spectrum.rigid_modes,
             seconds=seconds,
             peak_mb=peak_megabytes(),
+            meshes=meshes,
         ),
         warnings=(
+            *shortfall,
             *_material_warnings(case),
             *_count_warnings(spectrum.missing),
             *beat_warnings([row.frequency_hz for row in rows], identity.names),
         ),
     )
+
+
+def _geometry_errors(mesh: Mesh) -> dict[str, float | None]:
+    """Return how far volume and surface of the curved cells are off, in millionths."""
+    if mesh.area == 0.0:
+        return {"volume_error_ppm": None, "area_error_ppm": None}
+    volume = float(volumes(mesh.points, mesh.cells).sum())
+    area = float(facet_areas(mesh.points, mesh.facets).sum())
+    return {
+        "volume_error_ppm": 1e6 * (volume / mesh.volume - 1.0),
+        "area_error_ppm": 1e6 * (area / mesh.area - 1.0),
+    }
 
 
 def _too_fine(mesh: Mesh, error: NoRoom) -> InputError:

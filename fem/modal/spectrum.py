@@ -54,6 +54,7 @@ class Spectrum:
     missing : modes below the last one that the iteration did not find, by the inertia
         of a shifted factorisation; None where it was not counted
     excess : estimated excess of each eigenvalue over the converged one, or None
+    countable : the direct solver can count modes by inertia
     """
 
     frequencies: np.ndarray
@@ -65,6 +66,7 @@ class Spectrum:
     solves: int
     missing: int | None = None
     excess: Excess | None = None
+    countable: bool = False
 
     def ordered(self, order: np.ndarray) -> Spectrum:
         """Return the same modes in another order."""
@@ -149,7 +151,7 @@ def solve_spectrum(
             solved = time.perf_counter()
             wanted = estimate and len(found.values) > 0
             surplus = _excess(system, factor, sigma, found) if wanted else None
-            name = factor.name
+            name, countable = factor.name, factor.counts
         finally:
             factor.close()
         estimated = time.perf_counter()
@@ -179,7 +181,46 @@ def solve_spectrum(
         solves=found.solves,
         missing=missing,
         excess=surplus,
+        countable=countable,
     )
+
+
+def counted(
+    system: System,
+    spectrum: Spectrum,
+    *,
+    modes: int | None = 12,
+    up_to_hz: float | None = None,
+    prove: bool = False,
+) -> Spectrum:
+    """Return a spectrum whose modes were counted after the solve; solved anew if some are missing.
+
+    Parameters
+    ----------
+    system : System
+    spectrum : Spectrum
+        Of `solve_spectrum` with the same `modes` and `up_to_hz`.
+    prove : bool
+        As in `solve_spectrum`.
+
+    Raises
+    ------
+    SolveError
+        If modes are missing and are not found in larger blocks.
+    """
+    if not (spectrum.countable or prove):
+        return spectrum
+    began = time.perf_counter()
+    values = (2.0 * np.pi * spectrum.frequencies) ** 2
+    with threads(None):
+        missing = _missing(system, values, None, spectrum.countable)
+    if missing:
+        return solve_spectrum(
+            system, modes=modes, up_to_hz=up_to_hz, estimate=True, count=True, prove=prove
+        )
+    seconds = dict(spectrum.seconds)
+    seconds["eigen"] += time.perf_counter() - began
+    return replace(spectrum, missing=missing, seconds=seconds)
 
 
 @dataclass(frozen=True, eq=False, kw_only=True, slots=True)

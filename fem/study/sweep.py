@@ -151,6 +151,7 @@ def _same_body(case: Case, other: Case) -> bool:
         and case.shape.dimensions == other.shape.dimensions
         and case.shape.folder == other.shape.folder
         and case.settings.size == other.settings.size
+        and case.settings.accuracy == other.settings.accuracy
         and case_patches(case) == case_patches(other)
     )
 

@@ -36,7 +36,6 @@ _OPTIONS = {
     "Mesh.HighOrderOptimize": 0,
     "Mesh.Optimize": 1,
     "Mesh.OptimizeNetgen": 0,
-    "Mesh.MeshSizeExtendFromBoundary": 1,
     "Mesh.MeshSizeFromPoints": 0,
 }
 
@@ -70,6 +69,9 @@ def generate(
     smallest = size if local is None else min(size, float(local.sizes.min()))
     cad.option.setNumber("Mesh.MeshSizeMin", smallest * _SMALLEST)
     cad.option.setNumber("Mesh.MeshSizeFromCurvature", per_turn)
+    # Where sizes are known inside, what the surface has is not carried inward: that
+    # would make half as many cells again.
+    cad.option.setNumber("Mesh.MeshSizeExtendFromBoundary", int(local is None))
     cad.model.mesh.clear()
     _refine(cad, size, spots, local)
     try:
