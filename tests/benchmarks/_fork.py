@@ -8,6 +8,7 @@ import resource
 import subprocess
 import sys
 import tempfile
+import time
 from pathlib import Path
 from typing import Any
 
@@ -100,11 +101,32 @@ def contend(
     return json.loads(done.stdout.splitlines()[-1])
 
 
-def report(seconds: dict[str, float], frequencies: np.ndarray, **more: Any) -> None:
-    """Print a contender's result as one line."""
-    peak = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
-    line = {"seconds": seconds, "frequencies": list(frequencies), "peak_mb": peak, **more}
-    sys.stdout.write(json.dumps(line) + "\n")
+class Clock:
+    """Wall and processor time of the stages of a run."""
+
+    def __init__(self) -> None:
+        self.seconds: dict[str, float] = {}
+        self._began = self._lap = time.perf_counter()
+        self._processor = time.process_time()
+
+    def stage(self, name: str) -> None:
+        """End a stage."""
+        now = time.perf_counter()
+        self.seconds[name] = now - self._lap
+        self._lap = now
+
+    def report(self, frequencies: np.ndarray, **more: Any) -> None:
+        """End the run and print its result as one line."""
+        line = {
+            "total": time.perf_counter() - self._began,
+            # All threads together: tells a busy machine from a slow method.
+            "processor": time.process_time() - self._processor,
+            "seconds": self.seconds,
+            "frequencies": list(frequencies),
+            "peak_mb": resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024,
+            **more,
+        }
+        sys.stdout.write(json.dumps(line) + "\n")
 
 
 def scratch() -> tempfile.TemporaryDirectory[str]:
