@@ -21,7 +21,12 @@ from pydantic import (
 )
 from pydantic_core import PydanticCustomError
 
+from ..geometry.dimension import FARTHEST
 from .mistake import SchemaMistake, told
+
+#: Above all that makes sense: a bed of springs, N/mm3 (1 mm of steel has 2e5), and a
+#: mass, g.
+STIFFEST, HEAVIEST = 1e9, 1e9
 
 
 class Table(BaseModel):
@@ -60,7 +65,7 @@ def _point(length: int) -> Any:
             isinstance(value, Sequence)
             and not isinstance(value, str)
             and len(value) == length
-            and all(map(_is_number, value))
+            and all(_is_number(item) and abs(item) <= FARTHEST for item in value)
         )
         if not good:
             raise PydanticCustomError("point", "must be a point {words}", {"words": words})
@@ -189,14 +194,14 @@ class MountTable(Table):
     kind: Literal["clamped", "held", "sliding", "springs", "free"]
     faces: Faces | None = None
     axes: Annotated[list[Literal["x", "y", "z"]], Field(min_length=1, max_length=3)] | None = None
-    normal_n_per_mm3: Annotated[Number, Field(ge=0)] | None = None
-    tangential_n_per_mm3: Annotated[Number, Field(ge=0)] | None = None
+    normal_n_per_mm3: Annotated[Number, Field(ge=0, le=STIFFEST)] | None = None
+    tangential_n_per_mm3: Annotated[Number, Field(ge=0, le=STIFFEST)] | None = None
 
 
 class AttachedMassTable(Table):
     """A mass on a face or round a point of the surface."""
 
-    grams: Positive
+    grams: Annotated[Positive, Field(le=HEAVIEST)]
     face: Face | None = None
     at: Point3 | None = None
     radius: Positive | None = None

@@ -6,6 +6,9 @@ import numpy as np
 
 from .errors import InputError
 
+#: Pieces of an outline nearer than this share of its size touch.
+_TOUCHING = 1e-7
+
 
 def refuse_crossing(lines: list[np.ndarray]) -> None:
     """Refuse loops that cross or touch themselves or each other, or fold back."""
@@ -14,7 +17,7 @@ def refuse_crossing(lines: list[np.ndarray]) -> None:
     start = np.cumsum([0, *(len(line) for line in lines)])
     following = np.arange(1, len(a) + 1)
     following[start[1:] - 1] = start[:-1]
-    slack = 1e-8 * float(np.ptp(a, axis=0).max())
+    slack = _TOUCHING * float(np.ptp(a, axis=0).max())
     place = _folds(a, b, following, slack)
     if place is None:
         place = _crossing(a, b, following, slack)

@@ -3,13 +3,20 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from enum import Enum
 from typing import Any
 
 from .errors import InputError
 from .words import nearest
+
+#: Lengths and coordinates that a part can have, mm: a hundredth of a micrometre to a kilometre.
+SHORTEST, FARTHEST = 1e-5, 1e6
+
+#: The shortest length of a part is at least this share of its longest: what is thinner
+#: cannot be told from nothing when the body is built.
+_THINNEST = 1e-6
 
 
 class Sort(Enum):
@@ -26,6 +33,10 @@ class Sort(Enum):
     FILE = "file name"
     FILE_OR_POINTS = "file name, or a list of [mm, mm]"
     FLAG = "true or false"
+
+
+#: Most items of a list: more are no part that can be meshed in minutes.
+_MOST = {Sort.ROWS: 200, Sort.LOOPS: 500, Sort.POINTS: 5000, Sort.FILE_OR_POINTS: 5000}
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -124,6 +135,11 @@ class Dimension:
             raise InputError(f"must be a {self.unit}", key=key, value=value)
         if len(value) < fewest:
             raise InputError(f"needs at least {fewest} items", key=key, value=f"{len(value)} items")
+        most = _MOST.get(self.sort, math.inf)
+        if len(value) > most:
+            raise InputError(
+                "has too many items", key=key, value=f"{len(value)} items", allowed=f"up to {most}"
+            )
         return [read(item, f"{key}.{i}") for i, item in enumerate(value, 1)]
 
     def _number(self, value: Any, key: str) -> float:
@@ -137,7 +153,16 @@ class Dimension:
         too_low = value <= self.low if self.strict else value < self.low
         if too_low or (self.high is not None and value > self.high):
             raise InputError("is out of range", key=key, value=value, allowed=allowed)
-        return value if self.sort is Sort.COUNT else float(value)
+        if self.sort is Sort.COUNT:
+            return value
+        if abs(value) > FARTHEST or (0 < abs(value) < SHORTEST and self.low >= 0):
+            raise InputError(
+                "is no length that a part can have",
+                key=key,
+                value=value,
+                allowed=f"{SHORTEST:g} to {FARTHEST:g} mm",
+            )
+        return float(value)
 
     def _choice(self, value: Any, key: str) -> str:
         if not isinstance(value, str) or value not in self.choices:
@@ -163,6 +188,10 @@ def read_point(value: Any, key: str) -> tuple[float, float]:
     )
     if not good:
         raise InputError("must be a point [mm, mm]", key=key, value=value)
+    if max(map(abs, value)) > FARTHEST:
+        raise InputError(
+            "is too far away", key=key, value=value, allowed=f"coordinates up to {FARTHEST:g} mm"
+        )
     return (float(value[0]), float(value[1]))
 
 
@@ -195,3 +224,34 @@ def read_dimensions(dimensions: tuple[Dimension, ...], values: Any, key: str) ->
         else:
             raise InputError(f"is missing: {d.text}", key=f"{key}.{d.name}", allowed=d.unit)
     return checked
+
+
+def refuse_uneven(dimensions: tuple[Dimension, ...], values: Mapping[str, Any], key: str) -> None:
+    """Raise InputError if a length is next to nothing beside the longest of the part."""
+    lengths = list(_lengths(dimensions, values, key))
+    longest = max((length for _, length in lengths), default=0.0)
+    for place, length in lengths:
+        if 0 < length < _THINNEST * longest:
+            raise InputError(
+                f"is next to nothing beside the longest dimension of {longest:g} mm",
+                key=place,
+                value=length,
+                allowed=f"{_THINNEST * longest:g} mm or more",
+            )
+
+
+def _lengths(
+    dimensions: tuple[Dimension, ...], values: Mapping[str, Any], key: str
+) -> Iterator[tuple[str, float]]:
+    for d in dimensions:
+        value, place = values.get(d.name), f"{key}.{d.name}"
+        if value is None or d.low < 0:
+            continue
+        if d.sort is Sort.ROWS:
+            for i, row in enumerate(value, 1):
+                yield from _lengths(d.columns, row, f"{place}.{i}")
+        elif d.sort in (Sort.LENGTH, Sort.LENGTHS, Sort.LENGTH_OR_LENGTHS):
+            if isinstance(value, tuple):
+                yield from ((f"{place}.{i}", item) for i, item in enumerate(value, 1))
+            else:
+                yield place, value

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 import os
 import pickle
 import signal
@@ -10,6 +9,7 @@ import subprocess
 import sys
 from typing import TYPE_CHECKING, Any
 
+from .dimension import FARTHEST, SHORTEST
 from .errors import InputError, MeshError, ModewrightError, ToolError
 from .mesh import Mesh
 
@@ -77,8 +77,13 @@ def generate(
     ToolError
         If the CAD library is missing something, crashed or ran out of time.
     """
-    if size_mm is not None and not (math.isfinite(size_mm) and size_mm > 0):
-        raise InputError("is out of range", key="solve.size", value=size_mm, allowed="over 0 mm")
+    if size_mm is not None and not SHORTEST <= size_mm <= FARTHEST:
+        raise InputError(
+            "is out of range",
+            key="solve.size",
+            value=size_mm,
+            allowed=f"{SHORTEST:g} to {FARTHEST:g} mm",
+        )
     if shape.family.mesh is not None:
         if patches:
             raise InputError(

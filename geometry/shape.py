@@ -8,7 +8,7 @@ from pathlib import Path
 from typing import Any
 
 from .anatomy import Anatomy
-from .dimension import Dimension, read_dimensions
+from .dimension import Dimension, read_dimensions, refuse_uneven
 from .errors import InputError
 from .mesh import Mesh
 from .solid import Solid
@@ -113,6 +113,7 @@ def make_shape(family: Family, values: Mapping[str, Any], *, folder: Path | None
         With the key path ``shape.…`` and what is allowed.
     """
     dimensions = read_dimensions(family.dimensions, values, "shape")
+    refuse_uneven(family.dimensions, dimensions, "shape")
     try:
         family.check(dimensions)
     except InputError as error:

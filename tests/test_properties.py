@@ -373,7 +373,7 @@ def test_few_drawn_dimensions_are_refused(family):
 
 @pytest.mark.parametrize("family", DRAWN)
 def test_a_drawn_part_is_solved_or_refused(family):
-    count = solve_drawn(family, 3, default_size=False)
+    count = solve_drawn(family, 2, default_size=False)
     assert count["refused"] < count["drawn"]
 
 

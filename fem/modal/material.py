@@ -98,9 +98,19 @@ class Material:
         """Return the material warmer by so many K than where its values hold.
 
         Moduli follow `modulus_slope`, density the expansion of the volume.
+
+        Raises
+        ------
+        InputError
+            If no stiffness would be left.
         """
         stiffer = 1.0 + (self.modulus_slope or 0.0) * temperature_rise
         longer = 1.0 + (self.expansion or 0.0) * temperature_rise
+        if stiffer <= 0.0:
+            raise InputError(
+                f"{self.name} would have no stiffness left with its modulus_slope_ppm_per_k",
+                key="surroundings.temperature_c",
+            )
         e, g = self.youngs_modulus, self.shear_modulus
         return replace(
             self,
