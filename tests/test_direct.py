@@ -206,3 +206,28 @@ def test_integer_overflow_falls_back_to_the_wide_interface(monkeypatch):
     a = laplacian(6)
     f = factorise(upper(a), library="mkl")
     np.testing.assert_allclose(f.solve(a @ np.arange(36.0)), np.arange(36.0), atol=1e-10)
+
+
+def test_one_place_sets_threads(monkeypatch):
+    from modewright.fem.modal.direct import mkl
+    from modewright.fem.modal.threads import cores, threads
+    from threadpoolctl import threadpool_info
+
+    before = mkl.set_threads(3)
+    try:
+        with threads(2) as count:
+            assert count == 2
+            assert mkl.set_threads(2) == 2
+            # numpy's, scipy's and cvxopt's own libraries have one thread each.
+            blas = [x for x in threadpool_info() if x["internal_api"] == "openblas"]
+            assert blas
+            assert {x["num_threads"] for x in blas} == {1}
+        assert mkl.set_threads(3) == 3
+    finally:
+        mkl.set_threads(before)
+    monkeypatch.setenv("OMP_NUM_THREADS", "5")
+    with threads() as count:
+        assert count == 5
+    monkeypatch.delenv("OMP_NUM_THREADS")
+    with threads() as count:
+        assert count == cores()

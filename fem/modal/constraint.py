@@ -38,6 +38,10 @@ class Constraint:
     ----------
     free : (n, 3) bool
         Whether a node can move along its local direction.
+    moving : (m,) int
+        Nodes that can move in some direction, ascending.
+    partly : (k,) int
+        Those among them that cannot move in every direction, ascending.
     turned : (t,) int
         Nodes whose local directions are not x, y, z, ascending.
     directions : (t, 3, 3) float
@@ -45,6 +49,8 @@ class Constraint:
     """
 
     free: np.ndarray
+    moving: np.ndarray
+    partly: np.ndarray
     turned: np.ndarray
     directions: np.ndarray
 
@@ -52,16 +58,6 @@ class Constraint:
     def unknowns(self) -> int:
         """Number of free local components."""
         return int(self.free.sum())
-
-    @property
-    def moving(self) -> np.ndarray:
-        """Nodes that can move in some direction, (m,) int ascending."""
-        return np.flatnonzero(self.free.any(axis=1))
-
-    @property
-    def partly(self) -> np.ndarray:
-        """Nodes that can move in some directions only, (k,) int ascending."""
-        return np.flatnonzero(self.free.any(axis=1) & ~self.free.all(axis=1))
 
     def local(self, vectors: np.ndarray) -> np.ndarray:
         """Return components (n, 3, k) along the local directions of vectors (n, 3, k)."""
@@ -199,7 +195,14 @@ def make_constraint(nodes: int, held: Iterable[Held]) -> Constraint:
         rank = int((strength > np.sqrt(1.0 - np.cos(SMOOTH))).sum())
         free[node] = np.arange(3) >= rank
         frames[k] = frame.T
-    return Constraint(free=free, turned=turned, directions=frames)
+    some = free.any(axis=1)
+    return Constraint(
+        free=free,
+        moving=np.flatnonzero(some),
+        partly=np.flatnonzero(some & ~free.all(axis=1)),
+        turned=turned,
+        directions=frames,
+    )
 
 
 def mend_normals(points: np.ndarray, held: Held, motions: np.ndarray) -> Held:

@@ -134,7 +134,7 @@ def solve_spectrum(
     SolveError
         If the factorisation fails or the iteration does not converge.
     """
-    with threads(thread_count) as workers:
+    with threads(thread_count, library) as workers:
         began = time.perf_counter()
         sigma, factor = _factor(system, library)
         count = (count and factor.counts) or prove

@@ -8,6 +8,8 @@ from contextlib import contextmanager
 
 from threadpoolctl import threadpool_limits
 
+from .direct.factor import load
+
 
 def cores() -> int:
     """Return the number of cores this process may use."""
@@ -17,7 +19,7 @@ def cores() -> int:
 
 
 @contextmanager
-def threads(count: int | None = None) -> Iterator[int]:
+def threads(count: int | None = None, library: str | None = None) -> Iterator[int]:
     """Run a block with `count` threads in the direct solver and one in numpy's own library.
 
     Two pools of threads that both wait by spinning take the cores from each
@@ -27,6 +29,9 @@ def threads(count: int | None = None) -> Iterator[int]:
     ----------
     count : int, optional
         Default: what ``OMP_NUM_THREADS`` says, else all cores.
+    library : str, optional
+        Direct solver that will be used; see `direct.factor.factorise`. Only MKL
+        PARDISO uses more than one thread.
 
     Yields
     ------
@@ -36,6 +41,8 @@ def threads(count: int | None = None) -> Iterator[int]:
     if count is None:
         asked = os.environ.get("OMP_NUM_THREADS", "")
         count = int(asked) if asked.isdigit() and int(asked) > 0 else cores()
+    # What is not loaded yet cannot be limited.
+    load(library)
     with threadpool_limits(limits=1, user_api="blas"):
         restore = _direct_threads(count)
         try:

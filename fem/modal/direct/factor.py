@@ -73,7 +73,7 @@ def factorise(upper: Upper, *, positive: bool = True, library: str | None = None
     InputError, ToolError
         If the library named is unknown, or does not load.
     """
-    return _maker(library or os.environ.get(VARIABLE) or None)(upper, positive)
+    return load(library)(upper, positive)
 
 
 def available() -> tuple[str, ...]:
@@ -81,7 +81,15 @@ def available() -> tuple[str, ...]:
     return tuple(name for name in LIBRARIES if _load(name) is not None)
 
 
-def _maker(library: str | None) -> Callable[[Upper, bool], Factor]:
+def load(library: str | None = None) -> Callable[[Upper, bool], Factor]:
+    """Load a library, the preferred one by default, and return what makes factors with it.
+
+    Raises
+    ------
+    InputError, ToolError
+        If the library named is unknown, or does not load.
+    """
+    library = library or os.environ.get(VARIABLE) or None
     if library is not None and library not in LIBRARIES:
         raise InputError(
             "no such direct solver", key=VARIABLE, value=library, allowed=", ".join(LIBRARIES)
