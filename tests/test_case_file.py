@@ -209,7 +209,10 @@ BAD = {
     "table of a later issue": (GOOD + "\n[vary]\nlength = [1, 2]\n", "vary: unknown key"),
     "unknown key": (changed("grams", "gramms"), "did you mean 'grams'"),
     "unknown key in solve": (changed("modes = 6", "mode = 6"), "did you mean 'modes'"),
-    "accuracy of a later issue": (changed("size = 1.5", "accuracy_cents = 2"), "unknown key"),
+    "accuracy beside a size": (
+        changed("size = 1.5", "size = 1.5\naccuracy_cents = 2"),
+        "both size",
+    ),
     "no shape": (GOOD[: GOOD.index("[shape]")] + '[material]\nname = "brass C260"', "shape"),
     "no family": (changed('family = "fork"', ""), "family"),
     "unknown family": (changed('"fork"', '"frok"'), "did you mean 'fork'"),
