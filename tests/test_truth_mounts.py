@@ -93,13 +93,13 @@ def test_springs_go_from_free_to_clamped(block, solve_as_case):
         return solve_as_case("bar", shape, mesh=mesh, mount=bed, modes=count)
 
     clamped = solve_as_case("bar", shape, mesh=mesh, held=["root"])
-    near, nearer = on(1e9), on(1e10)
+    near, nearer = on(1e8), on(1e9)
     assert nearer.names == clamped.names
     off, less = 1 - raw(near) / raw(clamped), 1 - raw(nearer) / raw(clamped)
     assert np.all(less > 0)
-    assert np.all(off < 1e-4)
+    assert np.all(less < 5e-5)
     # A bed gives by 1 / k.
-    np.testing.assert_allclose(off / less, 10.0, rtol=0.1)
+    np.testing.assert_allclose(off / less, 10.0, rtol=0.15)
     free = solve_as_case("bar", shape, mesh=mesh, modes=3)
     np.testing.assert_allclose(raw(on(1e-2, 9))[6:], raw(free), rtol=2e-4)
 
