@@ -164,9 +164,13 @@ def test_estimate_on_five_shapes(name):
     )
     size = {"tube": 6.0, "bell": 6.0, "plate with a hole": 5.0}.get(name, 4.0)
     coarse = solve(sized(case, size))
-    fine = solve(sized(case, size / 2.6))
-    assert fine.mesh_facts.unknowns > 6 * coarse.mesh_facts.unknowns
-    for one, other in zip(coarse.modes, fine.modes, strict=True):
-        true = cents(one.raw_hz, other.frequency_hz)
+    fine = solve(sized(case, size / 3.6, modes=8))
+    assert fine.mesh_facts.unknowns > 8 * coarse.mesh_facts.unknowns
+    converged = {mode.name: mode.frequency_hz for mode in fine.modes}
+    compared = 0
+    for mode in coarse.modes:
+        true = cents(mode.raw_hz, converged[mode.name])
         if true > 0.5:
-            assert 0.7 < one.mesh_error_cents / true < 1.5, (one.name, true, one.mesh_error_cents)
+            assert 0.7 < mode.mesh_error_cents / true < 1.5, (mode.name, true)
+            compared += 1
+    assert compared >= 2

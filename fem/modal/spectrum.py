@@ -13,6 +13,7 @@ from .direct.factor import Factor, factorise
 from .direct.inertia import negative_eigenvalues
 from .direct.triangle import Upper
 from .eigen import CLUSTER, lowest_modes
+from .krylov import Apply
 from .memory import NoRoom
 from .mesh_error import Excess, excess
 from .parallel import SplitMatrix
@@ -244,8 +245,12 @@ def _search(
 ) -> _Found:
     constraint = system.constraint
     mass, nodes = SplitMatrix(system.mass, workers), len(constraint.free)
+
+    def solve(b: np.ndarray) -> np.ndarray:
+        return constraint.to_vectors(factor.solve(constraint.to_unknowns(b)))
+
     pairs = lowest_modes(
-        lambda b: constraint.to_vectors(factor.solve(constraint.to_unknowns(b))),
+        solve,
         lambda v: (mass @ np.ascontiguousarray(v).reshape(nodes, -1)).reshape(v.shape),
         _draw(system),
         count=modes,
@@ -255,7 +260,7 @@ def _search(
         block=block,
         workers=workers,
     )
-    values, vectors, residuals = _refined(system, pairs.vectors)
+    values, vectors, residuals = _refined(system, pairs.vectors, solve)
     shapes = np.ascontiguousarray(vectors.T).reshape(len(values), nodes, 3)
     return _Found(values=values, shapes=shapes, residuals=residuals, solves=pairs.solves)
 
@@ -351,14 +356,21 @@ def _draw(system: System):
     return draw
 
 
-def _refined(system: System, vectors: np.ndarray) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+def _refined(
+    system: System, vectors: np.ndarray, solve: Apply
+) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
     """Return values, vectors and residuals from the quotients u^T K u.
 
     Those are free of the rounding of the factorisation, which at 1e-9 of a
-    frequency differs from library to library.
+    frequency differs from library to library. The vectors go once more through
+    the inverse first: what the iteration left in them is rough, and the inverse
+    smooths it out at the cost of one block of right sides.
     """
     if vectors.shape[1] == 0:
         return np.zeros(0), vectors, np.zeros(0)
+    vectors = solve(system.apply_mass(vectors))
+    vectors -= system.rigid @ (system.rigid.T @ system.apply_mass(vectors))
+    vectors /= np.sqrt(np.einsum("ij,ij->j", vectors, system.apply_mass(vectors)))
     elastic = system.apply_stiffness(vectors)
     reduced = system.constraint.to_unknowns(vectors)
     inertia = system.constraint.to_unknowns(system.apply_mass(vectors))
