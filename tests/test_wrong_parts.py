@@ -239,6 +239,13 @@ WRONG = {
         + '[mount]\nkind = "springs"\nfaces = ["root"]\nnormal_n_per_mm3 = 1e299\n',
         "mount.normal_n_per_mm3",
     ),
+    "a spring that is hardly there": (
+        BAR
+        + STEEL
+        + COARSE
+        + '[mount]\nkind = "springs"\nfaces = ["root"]\nnormal_n_per_mm3 = 1e-5\n',
+        "free to within rounding",
+    ),
     # Materials that no body can have.
     "an orthotropic plate with too large a ratio": (
         BAR
