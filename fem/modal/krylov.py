@@ -27,6 +27,9 @@ _TRUSTED = 1e-6
 #: Blocks whose norms differ by less are orthonormal to rounding after one pass.
 _EVEN = 1e-2
 
+#: Ritz vectors with a larger residual say nothing yet.
+_USEFUL = 0.5
+
 #: Fresh vectors that probe for what the space has missed, and how often they are
 #: multiplied by the operator.
 _PROBES, _PROBE_STEPS = 4, 3
@@ -135,9 +138,21 @@ class Space:
         left = np.linalg.norm(self._coupling @ mixes, axis=0)
         return Ritz(theta=theta, mixes=mixes, residuals=left / np.maximum(np.abs(theta), 1e-300))
 
-    def vectors(self, ritz: Ritz, count: int) -> np.ndarray:
-        """Return the first `count` Ritz vectors (N, count)."""
-        return self._basis.mix(ritz.mixes[:, :count])
+    def answers(self, ritz: Ritz, count: int) -> tuple[np.ndarray, np.ndarray]:
+        """Return the `count` lowest values 1 / theta and their vectors (N, count).
+
+        They are the best that A Q holds, one power of A beyond the basis: A Q = Q T + V C
+        is at hand without another solve, and what it leaves of rough parts is smaller by
+        a factor theta. With Ritz vectors x and w = A x / theta, w^T (K - sigma M) w is
+        1 / theta and w^T M w is I + (C s / theta)^T (C s / theta).
+        """
+        good = (ritz.theta > 0.0) & (ritz.residuals < _USEFUL)
+        good[:count] = True
+        theta, mixes = ritz.theta[good], ritz.mixes[:, good]
+        beyond = self._coupling @ mixes / theta
+        values, turn = sla.eigh(np.diag(1.0 / theta), np.eye(len(theta)) + beyond.T @ beyond)
+        turn = turn[:, :count]
+        return values[:count], self._basis.mix(mixes @ turn) + self._next @ (beyond @ turn)
 
     def widen(self, above: float) -> bool:
         """Look outside the space for eigenvalues theta over `above`; take in what is found.

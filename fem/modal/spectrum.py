@@ -249,9 +249,12 @@ def _search(
     def solve(b: np.ndarray) -> np.ndarray:
         return constraint.to_vectors(factor.solve(constraint.to_unknowns(b)))
 
+    def apply_mass(v: np.ndarray) -> np.ndarray:
+        return (mass @ np.ascontiguousarray(v).reshape(nodes, -1)).reshape(v.shape)
+
     pairs = lowest_modes(
         solve,
-        lambda v: (mass @ np.ascontiguousarray(v).reshape(nodes, -1)).reshape(v.shape),
+        apply_mass,
         _draw(system),
         count=modes,
         limit=None if up_to_hz is None else (2.0 * np.pi * up_to_hz) ** 2,
@@ -260,7 +263,7 @@ def _search(
         block=block,
         workers=workers,
     )
-    values, vectors, residuals = _refined(system, pairs.vectors, solve)
+    values, vectors, residuals = _refined(system, pairs.vectors, apply_mass)
     shapes = np.ascontiguousarray(vectors.T).reshape(len(values), nodes, 3)
     return _Found(values=values, shapes=shapes, residuals=residuals, solves=pairs.solves)
 
@@ -357,23 +360,18 @@ def _draw(system: System):
 
 
 def _refined(
-    system: System, vectors: np.ndarray, solve: Apply
+    system: System, vectors: np.ndarray, apply_mass: Apply
 ) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
     """Return values, vectors and residuals from the quotients u^T K u.
 
     Those are free of the rounding of the factorisation, which at 1e-9 of a
-    frequency differs from library to library. The vectors go once more through
-    the inverse first: what the iteration left in them is rough, and the inverse
-    smooths it out at the cost of one block of right sides.
+    frequency differs from library to library.
     """
     if vectors.shape[1] == 0:
         return np.zeros(0), vectors, np.zeros(0)
-    vectors = solve(system.apply_mass(vectors))
-    vectors -= system.rigid @ (system.rigid.T @ system.apply_mass(vectors))
-    vectors /= np.sqrt(np.einsum("ij,ij->j", vectors, system.apply_mass(vectors)))
     elastic = system.apply_stiffness(vectors)
     reduced = system.constraint.to_unknowns(vectors)
-    inertia = system.constraint.to_unknowns(system.apply_mass(vectors))
+    inertia = system.constraint.to_unknowns(apply_mass(vectors))
     values, turn = sla.eigh(_even(reduced.T @ elastic), _even(reduced.T @ inertia))
     elastic, inertia = elastic @ turn, inertia @ turn
     size = np.linalg.norm(elastic, axis=0)
