@@ -18,6 +18,17 @@ def cores() -> int:
     return os.cpu_count() or 1
 
 
+def default_count() -> int:
+    """Return what ``OMP_NUM_THREADS`` says, else one thread less than there are cores.
+
+    The threads of a factorisation wait for the slowest of them many times. On a
+    machine of two cores with anything else at work, two threads took longer than
+    one; a core left free costs little where there are many.
+    """
+    asked = os.environ.get("OMP_NUM_THREADS", "")
+    return int(asked) if asked.isdigit() and int(asked) > 0 else max(1, cores() - 1)
+
+
 @contextmanager
 def threads(count: int | None = None, library: str | None = None) -> Iterator[int]:
     """Run a block with `count` threads in the direct solver and one in numpy's own library.
@@ -28,7 +39,7 @@ def threads(count: int | None = None, library: str | None = None) -> Iterator[in
     Parameters
     ----------
     count : int, optional
-        Default: what ``OMP_NUM_THREADS`` says, else all cores.
+        Default: see `default_count`.
     library : str, optional
         Direct solver that will be used; see `direct.factor.factorise`. Only MKL
         PARDISO uses more than one thread.
@@ -39,8 +50,7 @@ def threads(count: int | None = None, library: str | None = None) -> Iterator[in
         The number of threads of the direct solver.
     """
     if count is None:
-        asked = os.environ.get("OMP_NUM_THREADS", "")
-        count = int(asked) if asked.isdigit() and int(asked) > 0 else cores()
+        count = default_count()
     # What is not loaded yet cannot be limited.
     load(library)
     with threadpool_limits(limits=1, user_api="blas"):

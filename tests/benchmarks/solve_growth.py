@@ -11,7 +11,7 @@ import sys
 from pathlib import Path
 
 import _fork
-from modewright.fem.modal.threads import cores
+from modewright.fem.modal.threads import default_count
 
 
 def solve(path: str, threads: int) -> None:
@@ -30,7 +30,7 @@ def solve(path: str, threads: int) -> None:
 
 def main(wanted: list[int]) -> None:
     """Solve every size and print a table."""
-    threads = cores()
+    threads = default_count()
     say = sys.stdout.write
     say(f"fork, {_fork.MODES} modes, {threads} threads\n")
     heads = ("assemble", "factor", "eigen", "total s", "peak MB")
