@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -12,8 +12,8 @@ from .parallel import in_slices
 
 Apply = Callable[[np.ndarray], np.ndarray]
 
-#: Columns in one piece of storage of the basis.
-_PIECE = 64
+#: Vectors V (N, k) and their products M V.
+Pair = tuple[np.ndarray, np.ndarray]
 
 #: A new direction smaller than this share of the block it came from is rounding.
 _ROUNDING = 1e-12
@@ -58,6 +58,7 @@ class Space:
 
     The basis Q of all vectors multiplied so far satisfies A Q = Q T + V C, where V
     is the block to be multiplied next and C is not zero for the last block only.
+    Products with M are kept beside the vectors: they are needed at every step.
 
     Parameters
     ----------
@@ -85,50 +86,45 @@ class Space:
     ) -> None:
         self.block = block
         self._solve, self._apply_mass, self._draw = solve, apply_mass, draw
-        self._basis = _Columns(block, workers)
+        self._workers = workers
+        self._known: list[Pair] = []
+        if known is not None and known.shape[1]:
+            self._known = [(known, apply_mass(known))]
+        self._blocks: list[Pair] = []
         self._projected = np.zeros((0, 0))
         self._coupling = np.zeros((0, 0))
-        self._previous: np.ndarray | None = None
-        self._known = known if known is not None and known.shape[1] else None
         self.steps = self.solves = 0
-        self._next, self._next_mass, _ = self._orthonormal(draw(block))
+        self._next, _ = self._orthonormal(draw(block), self._known)
 
     @property
     def exhausted(self) -> bool:
         """Whether there is no further direction."""
-        return self._next.shape[1] == 0
-
-    @property
-    def size(self) -> int:
-        """Number of vectors in the basis."""
-        return len(self._projected)
+        return self._next[0].shape[1] == 0
 
     def step(self) -> None:
         """Multiply the next block by A and take it into the basis."""
-        block, mass = self._next, self._next_mass
-        old, width = self.size, block.shape[1]
+        block, mass = self._next
+        old, width = len(self._projected), block.shape[1]
         image = self._multiply(mass)
         own = mass.T @ image
         column = np.zeros((old + width, width))
         column[old:] = 0.5 * (own + own.T)
         image -= block @ column[old:]
-        if self._previous is not None:
+        if self._blocks:
             # What the last step left in this block, by symmetry.
-            before = self._coupling[:, -self._previous.shape[1] :].T
-            column[old - len(before) : old, : before.shape[1]] = before
-            image -= self._previous @ column[old - len(before) : old]
-        self._basis.append(block)
-        # The part so far is exact; what rounding leaves is taken out by the whole
-        # basis in the next line.
-        following, following_mass, root = self._orthonormal(image)
+            previous = self._blocks[-1][0]
+            before = self._coupling[:, -previous.shape[1] :].T
+            column[old - len(before) : old] = before
+            image -= previous @ before
+        self._blocks.append(self._next)
+        # So far the recurrence; what rounding leaves of the basis goes out next.
+        self._next, root = self._orthonormal(image, [*self._known, *self._blocks])
         projected = np.zeros((old + width,) * 2)
         projected[:old, :old] = self._projected
         projected[:, old:] = column
         projected[old:] = column.T
         self._projected = projected
         self._coupling = np.hstack([np.zeros((len(root), old)), root])
-        self._previous = block
-        self._next, self._next_mass = following, following_mass
         self.steps += 1
 
     def ritz(self) -> Ritz:
@@ -152,7 +148,11 @@ class Space:
         beyond = self._coupling @ mixes / theta
         values, turn = sla.eigh(np.diag(1.0 / theta), np.eye(len(theta)) + beyond.T @ beyond)
         turn = turn[:, :count]
-        return values[:count], self._basis.mix(mixes @ turn) + self._next @ (beyond @ turn)
+        shares = np.split(mixes @ turn, np.cumsum([v.shape[1] for v, _ in self._blocks])[:-1])
+        vectors = self._next[0] @ (beyond @ turn)
+        for (block, _), share in zip(self._blocks, shares, strict=True):
+            vectors += block @ share
+        return values[:count], vectors
 
     def widen(self, above: float) -> bool:
         """Look outside the space for eigenvalues theta over `above`; take in what is found.
@@ -162,74 +162,87 @@ class Space:
         """
         if self.exhausted:
             return False
-        kept: list[np.ndarray] = []
-        aside = [self._next]
-        vectors, mass, _ = self._orthonormal(
-            self._multiply(self._apply_mass(self._draw(_PROBES))), aside
-        )
+        space = [*self._known, *self._blocks, self._next]
+        fresh = self._multiply(self._apply_mass(self._draw(_PROBES)))
+        current, _ = self._orthonormal(fresh, space)
+        kept: list[Pair] = []
         projected = np.zeros((0, 0))
         for _ in range(_PROBE_STEPS):
-            if vectors.shape[1] == 0:
+            if current[0].shape[1] == 0:
                 break
-            kept.append(vectors)
-            image = self._multiply(mass)
-            rows = np.vstack([self._apply_mass(v).T @ image for v in kept])
+            kept.append(current)
+            image = self._multiply(current[1])
+            rows = np.vstack([mass.T @ image for _, mass in kept])
             old = len(projected)
             grown = np.zeros((len(rows),) * 2)
             grown[:old, :old] = projected
             grown[:, old:] = rows
             grown[old:] = rows.T
             projected = grown
-            vectors, mass, _ = self._orthonormal(image, aside + kept)
+            current, _ = self._orthonormal(image, [*space, *kept])
         if not kept:
             return False
         theta, mixes = sla.eigh(projected)
-        found = theta > above
-        if not found.any():
+        found = mixes[:, theta > above]
+        if found.shape[1] == 0:
             return False
-        extra = np.hstack(kept) @ mixes[:, found]
-        self._next = np.hstack([self._next, extra])
-        self._next_mass = np.hstack([self._next_mass, self._apply_mass(extra)])
-        self._coupling = np.vstack(
-            [self._coupling, np.zeros((extra.shape[1], self._coupling.shape[1]))]
-        )
+        extra = (np.hstack([v for v, _ in kept]) @ found, np.hstack([m for _, m in kept]) @ found)
+        self._next = (np.hstack([self._next[0], extra[0]]), np.hstack([self._next[1], extra[1]]))
+        empty = np.zeros((found.shape[1], self._coupling.shape[1]))
+        self._coupling = np.vstack([self._coupling, empty])
         return True
 
     def _multiply(self, mass_vectors: np.ndarray) -> np.ndarray:
         self.solves += mass_vectors.shape[1]
         return self._solve(mass_vectors)
 
-    def _orthonormal(
-        self, vectors: np.ndarray, aside: list[np.ndarray] | None = None
-    ) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
-        """Return vectors made M-orthonormal and orthogonal to everything else.
+    def _orthonormal(self, vectors: np.ndarray, others: Sequence[Pair]) -> tuple[Pair, np.ndarray]:
+        """Return vectors made M-orthonormal and orthogonal to others; overwrites them.
 
         Returns
         -------
         V, M V : (N, k) float
         root : (k, b) float
-            vectors = V root, up to what lies in the space already.
+            vectors = V root, up to what lies in the others.
         """
+        parts = self._without(vectors, others)
         mass = self._apply_mass(vectors)
-        start = np.sqrt(np.einsum("ij,ij->j", vectors, mass).max(initial=0.0))
-        others = [self._known, self._basis, *(aside or [])]
-        vectors = _without(vectors, mass, others)
-        vectors, mass, root = _normalised(vectors, self._apply_mass(vectors), _ROUNDING * start)
+        square = np.einsum("ij,ij->j", parts, parts) + np.einsum("ij,ij->j", vectors, mass)
+        start = np.sqrt(square.max(initial=0.0))
+        pair, root = _normalised(vectors, mass, _ROUNDING * start)
         if len(root) and np.linalg.norm(root, axis=1).min() < _WEAK * start:
             # Little was left: what rounding left of the others weighs more now. A
             # second time is enough, unless nothing new was there at all.
-            vectors = _without(vectors, mass, others)
-            vectors, mass, again = _normalised(vectors, self._apply_mass(vectors), 0.5)
+            vectors = pair[0]
+            self._without(vectors, others)
+            pair, again = _normalised(vectors, self._apply_mass(vectors), 0.5)
             root = again @ root
-        return vectors, mass, root
+        return pair, root
+
+    def _without(self, vectors: np.ndarray, others: Sequence[Pair]) -> np.ndarray:
+        """Take the parts along others out of vectors, in place; return those parts."""
+        if not others:
+            return np.zeros((0, vectors.shape[1]))
+        rows = len(vectors)
+
+        def measure(s: slice) -> np.ndarray:
+            return np.vstack([mass[s].T @ vectors[s] for _, mass in others])
+
+        parts = np.sum(in_slices(measure, rows, self._workers), axis=0)
+        shares = np.split(parts, np.cumsum([v.shape[1] for v, _ in others])[:-1])
+
+        def subtract(s: slice) -> None:
+            for (other, _), share in zip(others, shares, strict=True):
+                vectors[s] -= other[s] @ share
+
+        in_slices(subtract, rows, self._workers)
+        return parts
 
 
-def _normalised(
-    vectors: np.ndarray, mass: np.ndarray, floor: float
-) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+def _normalised(vectors: np.ndarray, mass: np.ndarray, floor: float) -> tuple[Pair, np.ndarray]:
     """Return V, M V, root with V M-orthonormal and vectors = V root; drop what is below floor."""
     rest, rest_mass = vectors, mass
-    found: list[tuple[np.ndarray, np.ndarray]] = []
+    found: list[Pair] = []
     again = False
     while rest.shape[1]:
         square, turn = sla.eigh(rest.T @ rest_mass)
@@ -250,70 +263,9 @@ def _normalised(
         along = new.T @ rest_mass
         rest, rest_mass = rest - new @ along, rest_mass - new_mass @ along
     if not found:
-        return vectors[:, :0], mass[:, :0], np.zeros((0, vectors.shape[1]))
+        return (vectors[:, :0], mass[:, :0]), np.zeros((0, vectors.shape[1]))
     new, new_mass = found[0] if len(found) == 1 else map(np.hstack, zip(*found, strict=True))
     if again:
         inverse = sla.inv(sla.cholesky(new.T @ new_mass))
         new, new_mass = new @ inverse, new_mass @ inverse
-    return new, new_mass, new.T @ mass
-
-
-def _without(
-    vectors: np.ndarray, mass: np.ndarray, others: list[np.ndarray | _Columns | None]
-) -> np.ndarray:
-    """Return vectors less their parts along other M-orthonormal ones."""
-    for other in others:
-        if isinstance(other, _Columns):
-            vectors = other.remove(vectors, mass)
-        elif other is not None:
-            vectors = vectors - other @ (other.T @ mass)
-    return vectors
-
-
-class _Columns:
-    """Columns appended block by block, in pieces, so that nothing is copied."""
-
-    def __init__(self, block: int, workers: int) -> None:
-        self._workers = workers
-        self._width = max(_PIECE, block)
-        self._pieces: list[np.ndarray] = []
-        self._used = 0
-
-    def append(self, block: np.ndarray) -> None:
-        done = 0
-        while done < block.shape[1]:
-            if not self._pieces or self._used == self._width:
-                self._pieces.append(np.empty((len(block), self._width), order="F"))
-                self._used = 0
-            take = min(self._width - self._used, block.shape[1] - done)
-            self._pieces[-1][:, self._used : self._used + take] = block[:, done : done + take]
-            self._used += take
-            done += take
-
-    def _parts(self) -> list[np.ndarray]:
-        return [
-            piece if k + 1 < len(self._pieces) else piece[:, : self._used]
-            for k, piece in enumerate(self._pieces)
-        ]
-
-    def remove(self, vectors: np.ndarray, mass: np.ndarray) -> np.ndarray:
-        """Return vectors less their parts along these columns."""
-        rows = len(vectors)
-        for part in self._parts():
-            shares = in_slices(lambda s, q=part: q[s].T @ mass[s], rows, self._workers)
-            along = np.sum(shares, axis=0)
-
-            def subtract(s: slice, q: np.ndarray = part, c: np.ndarray = along) -> None:
-                vectors[s] -= q[s] @ c
-
-            in_slices(subtract, rows, self._workers)
-        return vectors
-
-    def mix(self, mixes: np.ndarray) -> np.ndarray:
-        first, total = 0, None
-        for part in self._parts():
-            product = part @ mixes[first : first + part.shape[1]]
-            total = product if total is None else total + product
-            first += part.shape[1]
-        assert total is not None
-        return total
+    return (new, new_mass), new.T @ mass

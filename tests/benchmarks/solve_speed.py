@@ -1,8 +1,9 @@
 """Assembly to 20 modes of a slotted fork, beside a plain stack and ngsolve.
 
 All contenders solve the same second-order mesh on the same threads (as many as
-OMP_NUM_THREADS says), one at a time, each in its own process; libraries are loaded before the clock starts. Prints
-seconds, ratios, peak memory, and how far the frequencies are apart.
+OMP_NUM_THREADS says, else one less than there are cores), one at a time, each in its
+own process; libraries are loaded before the clock starts. Prints seconds, ratios,
+processor time, peak memory, and how far the frequencies are apart.
 
     python tests/benchmarks/solve_speed.py [UNKNOWNS ...]
 
