@@ -164,7 +164,8 @@ def test_estimate_on_five_shapes(name):
     )
     size = {"tube": 6.0, "bell": 6.0, "plate with a hole": 5.0}.get(name, 4.0)
     coarse = solve(sized(case, size))
-    fine = solve(sized(case, size / 3.6, modes=8))
+    # Curvature, not the size asked for, rules the coarse mesh of the bell.
+    fine = solve(sized(case, size / (5.4 if name == "bell" else 3.6), modes=8))
     assert fine.mesh_facts.unknowns > 8 * coarse.mesh_facts.unknowns
     converged = {mode.name: mode.frequency_hz for mode in fine.modes}
     compared = 0
