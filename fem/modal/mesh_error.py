@@ -224,9 +224,7 @@ def _residual(
         inertia = np.matmul(coupled.mass[part], local.reshape(size, 10, 3 * modes))
         load = inertia.reshape(size, 30, modes) * eigenvalues
         load -= np.matmul(coupled.stiffness[part], flat)
-        total += _gathered(space.cells[part], load.reshape(-1, 3 * modes), len(total)).reshape(
-            total.shape
-        )
+        total += _scattered(space.cells[part], load, total.shape)
     return total
 
 

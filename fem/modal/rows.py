@@ -18,8 +18,8 @@ from .theory.bars import Prediction
 
 def mode_rows(
     case: Case,
-    best: Sequence[float],
-    raw: Sequence[float],
+    frequencies: np.ndarray,
+    raw: np.ndarray,
     identity: Identity,
     theory: Sequence[Prediction | None],
     residuals: np.ndarray,
@@ -29,7 +29,7 @@ def mode_rows(
     Parameters
     ----------
     case : Case
-    best : (m,) Hz, ascending, less the mesh error
+    frequencies : (m,) Hz, ascending, less the mesh error
     raw : (m,) Hz, of the mesh
     identity : names and shapes of the m modes
     theory : of each mode
@@ -40,7 +40,7 @@ def mode_rows(
     InputError
         If a target, a measured row or the reference mode fits no mode, or several.
     """
-    best = [float(f) for f in best]
+    best = [float(f) for f in frequencies]
     names = identity.names
     reference = _reference(case, best, names)
     targets = _targets(case, best, names)
